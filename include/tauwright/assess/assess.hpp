@@ -1,0 +1,5 @@
+// Everything of the assess floor.
+#pragma once
+
+#include "tauwright/assess/robustness.hpp"
+#include "tauwright/assess/simulate.hpp"

@@ -1,0 +1,151 @@
+#include "tauwright/assess/robustness.hpp"
+
+#include <algorithm>
+#include <cmath>
+#include <limits>
+#include <numbers>
+
+#include "assess/sweep.hpp"
+#include "math/polynomial_roots.hpp"
+#include "tauwright/model/polynomial.hpp"
+
+namespace tauwright {
+inline namespace v0 {
+
+namespace {
+
+using namespace detail;
+constexpr double pi = std::numbers::pi;
+constexpr double infinity = std::numeric_limits<double>::infinity();
+
+/// Closed-loop poles in the right half plane without dead time; empty where one is on the axis.
+std::optional<int> poles_without_dead_time(const TransferFunction& loop) {
+    const Factors& f = loop.factors();
+    Polynomial sum = expanded(f.lags, f.lag_pairs, f.integrators);
+    const Polynomial above = expanded(f.leads, f.lead_pairs, f.zeros_at_origin);
+    sum.resize(std::max(sum.size(), above.size()), 0.0);
+    for (std::size_t i = 0; i < above.size(); ++i) sum[i] += f.gain * above[i];
+    while (!sum.empty() && sum.back() == 0.0) sum.pop_back();
+    if (sum.size() < 2) return sum.empty() ? std::nullopt : std::optional<int>(0);
+    if (sum.front() == 0.0) return std::nullopt;
+    std::reverse(sum.begin(), sum.end());
+    const PolynomialRoots roots = polynomial_roots(sum);
+    int count = 0;
+    for (std::size_t i = 0; i < roots.values.size(); ++i) {
+        const double re = roots.values[i].real();
+        // The coefficients were rounded on the way here: that close to the axis is on it.
+        if (std::abs(re) <= std::max(roots.error_radii[i], 1e-13 * std::abs(roots.values[i]))) return std::nullopt;
+        count += re > 0.0;
+    }
+    return count;
+}
+
+// Poles cross the axis at the gain crossings, one pair each time the dead time turns L(jw) through
+// -1: to the right where the gain falls, to the left where it rises.
+std::optional<int> poles_followed(const LoopCurve& curve, const SweepResult& found) {
+    std::optional<int> count = poles_without_dead_time(curve.loop());
+    const double dead_time = curve.loop().dead_time();
+    if (!count || dead_time == 0.0) return count;
+    for (double w : found.gain_crossings) {
+        const std::complex<double> L0 = curve.loop().rational_at({0.0, w});
+        double angle = std::arg(-L0);
+        if (angle < 0.0) angle += 2.0 * pi;
+        if (dead_time * w <= angle) continue;
+        const double turns = std::floor((dead_time * w - angle) / (2.0 * pi)) + 1.0;
+        *count += (curve.at(w).slope.real() < 0.0 ? 2 : -2) * static_cast<int>(turns);
+    }
+    return count;
+}
+
+// Zeros of 1 + L in the right half plane from the turn of 1 + L along the axis: each open-loop
+// integrator adds half a turn less than it takes (see DEVELOPERS.md, "Two stability tests").
+std::optional<int> poles_by_winding(const LoopCurve& curve, const SweepResult& found) {
+    const double turns = found.winding / pi;
+    const double exact = curve.loop().unstable_poles() + 0.5 * std::max(curve.net_integrators(), 0) - turns;
+    const double rounded = std::round(exact);
+    // Where the loop keeps gain at infinite frequency the turn never ends; it is cut near a whole one.
+    if (std::abs(exact - rounded) > (curve.relative_degree() > 0 ? 1e-3 : 0.25)) return std::nullopt;
+    return static_cast<int>(rounded);
+}
+
+void decide(const LoopCurve& curve, const SweepResult& found, Robustness& r) {
+    if (curve.relative_degree() < 0 || (curve.at_infinity() >= 1.0 && curve.loop().dead_time() > 0.0)) {
+        // Neutral or advanced type: infinitely many poles to the right, or nothing that can be built.
+        r.verdict = Verdict::unstable;
+        r.stable = false;
+        return;
+    }
+    if (curve.pole_on_axis() || !found.complete) return;
+    if (found.to_minus_one.distance < 1e-9) {
+        r.verdict = Verdict::marginal;
+        r.stable = false;
+        return;
+    }
+    const auto followed = poles_followed(curve, found), wound = poles_by_winding(curve, found);
+    if (!followed || !wound || *followed != *wound || *followed < 0) return;
+    r.unstable_poles = *followed;
+    r.stable = *followed == 0;
+    r.verdict = *followed == 0 ? Verdict::stable : Verdict::unstable;
+}
+
+void collect_crossovers(const LoopCurve& curve, const SweepResult& found, Robustness& r) {
+    for (double w : found.gain_crossings) {
+        const double angle = std::arg(-curve.value(w));  // from -1, counterclockwise
+        double turn = angle;
+        if (turn <= 0.0) turn += 2.0 * pi;
+        r.gain_crossovers.push_back({w, std::abs(angle) * 180.0 / pi, turn / w});
+    }
+    for (double w : found.phase_crossings) r.phase_crossovers.push_back({w, 1.0 / std::abs(curve.value(w))});
+}
+
+void take_margins(const LoopCurve& curve, const SweepResult& found, Robustness& r) {
+    double above = infinity, below = 0.0, phase = infinity, delay = infinity;
+    const auto take = [&](double factor) {
+        if (factor > 1.0) above = std::min(above, factor);
+        if (factor < 1.0) below = std::max(below, factor);
+    };
+    for (const auto& c : r.phase_crossovers) take(c.gain_factor);
+    // The ends of the curve cross the negative axis too.
+    if (curve.net_integrators() == 0 && curve.loop().gain() < 0.0) take(-1.0 / curve.loop().gain());
+    if (curve.relative_degree() == 0 && curve.loop().dead_time() > 0.0) take(1.0 / curve.at_infinity());
+    if (curve.relative_degree() == 0 && curve.loop().dead_time() == 0.0 && curve.loop().leading_coefficient() < 0.0)
+        take(-1.0 / curve.loop().leading_coefficient());
+    for (const auto& c : r.gain_crossovers) {
+        phase = std::min(phase, c.phase_margin_deg);
+        delay = std::min(delay, c.delay_margin_s);
+    }
+    r.gain_margin = above;
+    r.gain_reduction_margin = below;
+    r.phase_margin_deg = phase;
+    r.delay_margin_s = delay;
+    r.max_sensitivity = 1.0 / found.to_minus_one.distance;
+    r.max_sensitivity_frequency = found.to_minus_one.frequency;
+    r.max_complementary_sensitivity = 1.0 / found.inverse_to_minus_one.distance;
+    r.max_complementary_sensitivity_frequency = found.inverse_to_minus_one.frequency;
+}
+
+}  // namespace
+
+Robustness robustness(const TransferFunction& open_loop) {
+    const LoopCurve curve(open_loop);
+    Robustness r;
+    if (curve.relative_degree() < 0 || curve.pole_on_axis()) {
+        decide(curve, {}, r);
+        return r;
+    }
+    const SweepResult found = sweep(curve);
+    collect_crossovers(curve, found, r);
+    decide(curve, found, r);
+    if (r.verdict == Verdict::stable) take_margins(curve, found, r);
+    return r;
+}
+
+Robustness robustness(const TransferFunction& process, const PidSettings& settings, const RobustnessOptions& options) {
+    require_not_negative("extra_delay", options.extra_delay_s);
+    if (options.scan_time_s) require_positive("scan_time", *options.scan_time_s);
+    const TransferFunction loop = process * transfer_function(settings);
+    return robustness(loop.with_dead_time(loop.dead_time() + options.extra_delay_s + 0.5 * options.scan_time_s.value_or(0.0)));
+}
+
+}  // namespace v0
+}  // namespace tauwright

@@ -1,0 +1,184 @@
+#include "tune/sheet_json.hpp"
+
+#include <type_traits>
+
+#include "tune/json_fields.hpp"
+
+namespace tauwright {
+inline namespace v0 {
+namespace detail {
+
+namespace {
+
+template <class T> struct is_optional : std::false_type {};
+template <class T> struct is_optional<std::optional<T>> : std::true_type {};
+template <class T> struct is_list : std::false_type {};
+template <class T> struct is_list<std::vector<T>> : std::true_type {};
+template <class T> constexpr bool is_word = std::is_enum_v<T>;
+
+// The values an enumeration may have, by trying: all of this library's lie between 0 and 31.
+template <class Enumeration> std::optional<Enumeration> value_of_word(const std::string& word) {
+    for (int i = 0; i < 32; ++i) {
+        const auto value = static_cast<Enumeration>(i);
+        if (word != "unknown" && word == name_of(value)) return value;
+    }
+    return std::nullopt;
+}
+
+template <class T> Json written(const T& x);
+
+struct Writer {
+    Json object = Json::object();
+    template <class T> void operator()(const char* key, const T& x) { object[key] = written(x); }
+};
+
+template <class T> Json written(const T& x) {
+    if constexpr (is_optional<T>::value) {
+        return x ? written(*x) : Json(nullptr);
+    } else if constexpr (is_list<T>::value) {
+        Json list = Json::array();
+        for (const auto& item : x) list.push_back(written(item));
+        return list;
+    } else if constexpr (std::is_same_v<T, std::map<std::string, double>>) {
+        Json object = Json::object();
+        for (const auto& [key, value] : x) object[key] = written(value);
+        return object;
+    } else if constexpr (std::is_same_v<T, double>) {
+        return is_finite(x) ? Json(x) : Json("infinite");
+    } else if constexpr (is_word<T>) {
+        return name_of(x);
+    } else if constexpr (std::is_same_v<T, TransferFunction>) {
+        return written(x.factors());
+    } else if constexpr (std::is_arithmetic_v<T> || std::is_same_v<T, std::string>) {
+        return x;
+    } else {
+        Writer writer;
+        describe(writer, x);
+        return std::move(writer.object);
+    }
+}
+
+[[noreturn]] void malformed(const std::string& path, const std::string& what) {
+    throw Error(error_code::file_malformed, "the sheet's " + (path.empty() ? std::string("document") : path) + " " + what +
+                                                "; give a document that tauwright wrote");
+}
+
+template <class T> void read(const Json& json, const std::string& path, T& x);
+
+struct Reader {
+    const Json& object;
+    const std::string& path;
+    template <class T> void operator()(const char* key, T& x) {
+        const auto it = object.find(key);
+        if (it == object.end()) malformed(path + "/" + key, "is missing");
+        read(*it, path + "/" + key, x);
+    }
+};
+
+template <class T> void read(const Json& json, const std::string& path, T& x) {
+    if constexpr (is_optional<T>::value) {
+        using Value = typename T::value_type;
+        if (json.is_null()) {
+            x.reset();
+        } else if constexpr (std::is_same_v<Value, TransferFunction>) {
+            Factors factors;
+            read(json, path, factors);
+            x = TransferFunction::from_factors(std::move(factors));
+        } else {
+            Value value{};
+            read(json, path, value);
+            x = std::move(value);
+        }
+    } else if constexpr (is_list<T>::value) {
+        if (!json.is_array()) malformed(path, "is not a list");
+        x.clear();
+        for (std::size_t i = 0; i < json.size(); ++i) {
+            typename T::value_type item{};
+            read(json[i], path + "/" + std::to_string(i), item);
+            x.push_back(std::move(item));
+        }
+    } else if constexpr (std::is_same_v<T, std::map<std::string, double>>) {
+        if (!json.is_object()) malformed(path, "is not an object");
+        x.clear();
+        for (const auto& [key, value] : json.items()) read(value, path + "/" + key, x[key]);
+    } else if constexpr (std::is_same_v<T, double>) {
+        if (json.is_number()) x = json.get<double>();
+        else if (json == "infinite") x = std::numeric_limits<double>::infinity();
+        else malformed(path, "is not a number");
+    } else if constexpr (std::is_same_v<T, bool>) {
+        if (!json.is_boolean()) malformed(path, "is neither true nor false");
+        x = json.get<bool>();
+    } else if constexpr (std::is_integral_v<T>) {
+        const bool fits = json.is_number_unsigned() ? json.get<std::uint64_t>() <= static_cast<std::uint64_t>(std::numeric_limits<T>::max())
+                                                    : std::is_signed_v<T> && json.is_number_integer();
+        if (!fits) malformed(path, "is not a whole number in range");
+        x = json.get<T>();
+    } else if constexpr (is_word<T>) {
+        const auto value = json.is_string() ? value_of_word<T>(json.get<std::string>()) : std::nullopt;
+        if (!value) malformed(path, "is not one of the words known here");
+        x = *value;
+    } else if constexpr (std::is_same_v<T, std::string>) {
+        if (!json.is_string()) malformed(path, "is not text");
+        x = json.get<std::string>();
+    } else {
+        if (!json.is_object()) malformed(path, "is not an object");
+        Reader reader{json, path};
+        describe(reader, x);
+    }
+}
+
+}  // namespace
+
+Json json_of(const TuningSheet& sheet) {
+    Json document = Json::object();
+    document["schema"] = sheet_schema;
+    document["schema_version"] = sheet_schema_version;
+    const Json body = written(sheet);
+    for (const auto& [key, value] : body.items()) document[key] = value;
+    return document;
+}
+
+TuningSheet sheet_of(const Json& document) {
+    if (!document.is_object()) malformed("", "is not an object");
+    const auto schema = document.find("schema"), number = document.find("schema_version");
+    if (schema == document.end() || *schema != sheet_schema || number == document.end() || *number != sheet_schema_version)
+        throw Error(error_code::schema_unsupported,
+                    "the document's schema is not " + std::string(sheet_schema) + " version " +
+                        std::to_string(sheet_schema_version) + "; give a sheet, or read it with the library version that wrote it");
+    TuningSheet sheet;
+    read(document, "", sheet);
+    return sheet;
+}
+
+}  // namespace detail
+
+std::string TuningSheet::json() const {
+    // Names given by the caller may be any bytes; what is not UTF-8 is replaced rather than refused.
+    return detail::json_of(*this).dump(2, ' ', false, detail::Json::error_handler_t::replace) + "\n";
+}
+
+TuningSheet TuningSheet::from_json(std::string_view json) {
+    detail::Json document;
+    try {
+        document = detail::Json::parse(json);
+    } catch (const std::exception& e) {
+        throw Error(error_code::file_malformed, std::string("json is not a JSON document (") + e.what() + "); give what json() wrote");
+    }
+    return detail::sheet_of(document);
+}
+
+std::vector<SheetDifference> differences(const TuningSheet& earlier, const TuningSheet& later) {
+    const auto a = detail::json_of(earlier).flatten(), b = detail::json_of(later).flatten();
+    std::vector<SheetDifference> list;
+    for (const auto& [path, value] : a.items()) {
+        const auto other = b.find(path);
+        if (other == b.end()) list.push_back({path, value.dump(), ""});
+        else if (*other != value) list.push_back({path, value.dump(), other->dump()});
+    }
+    for (const auto& [path, value] : b.items())
+        if (!a.contains(path)) list.push_back({path, "", value.dump()});
+    return list;
+}
+
+}  // namespace v0
+}  // namespace tauwright

@@ -1,0 +1,221 @@
+#include "tauwright/tune/tune.hpp"
+
+#include <algorithm>
+#include <cmath>
+
+#include "tauwright/core/version.hpp"
+#include "tauwright/model/forms.hpp"
+#include "tune/cautions.hpp"
+
+namespace tauwright {
+inline namespace v0 {
+
+namespace {
+
+// Margins below which settings need somebody's name (common practice, no source).
+constexpr double weak_max_sensitivity = 2.0, weak_gain_margin = 1.7, weak_phase_margin_deg = 30.0;
+
+std::string short_text(double x) {
+    char buffer[40];
+    const auto end = std::to_chars(buffer, buffer + sizeof buffer, x, std::chars_format::general, 4);
+    return {buffer, end.ptr};
+}
+
+// The range that record and form agree on.
+std::optional<Range> agreed(const std::optional<Range>& record, const std::optional<Range>& form, const char* name) {
+    if (record && form && (record->low != form->low || record->high != form->high))
+        throw Error(error_code::conflicting_arguments,
+                    std::string("form.") + name + " is " + text_of(form->low) + " to " + text_of(form->high) +
+                        ", the record's is " + text_of(record->low) + " to " + text_of(record->high) +
+                        "; a re-ranged loop needs a new test, or correct one of them");
+    return record ? record : form;
+}
+
+// Argument checks, and everything on the sheet that is known before the fit.
+TuningSheet opened(const Record& record, const TuningRequest& request) {
+    if (request.safety_function)
+        throw Error(error_code::safety_function,
+                    "request.safety_function is true; settings for safety functions are not given: follow the site's "
+                    "functional-safety procedure");
+    if (request.time_constant) detail::require_positive("request.time_constant", *request.time_constant);
+    if (request.duty) check(*request.duty);
+    if (request.as_found && !request.form)
+        throw Error(error_code::missing_argument,
+                    "request.as_found is given without request.form; the numbers mean nothing without the form they stand in");
+    TuningSheet sheet;
+    sheet.library_version = version;
+    sheet.loop_name = request.loop_name;
+    sheet.source = record.source();
+    sheet.first_stamp = record.first_stamp();
+    sheet.input_sha256 = record.sha256();
+    sheet.duty = request.duty.value_or(Duty{});
+    sheet.form = request.form;
+    sheet.process_value_range = record.process_value_range();
+    sheet.output_range = record.output_range();
+    if (sheet.form) {
+        check(*sheet.form);
+        sheet.process_value_range = agreed(sheet.process_value_range, sheet.form->process_value_range, "process_value_range");
+        sheet.output_range = agreed(sheet.output_range, sheet.form->output_range, "output_range");
+        if (!sheet.process_value_range || !sheet.output_range)
+            throw Error(error_code::missing_range,
+                        std::string(sheet.process_value_range ? "output_range" : "process_value_range") +
+                            " is not given; settings in a controller's form need both ranges: give them with the record or the form");
+        sheet.form->process_value_range = sheet.process_value_range;
+        sheet.form->output_range = sheet.output_range;
+    }
+    const bool percent = sheet.process_value_range && sheet.output_range;
+    sheet.gain_unit = percent ? "%/%" : "output unit/process-value unit";
+    return sheet;
+}
+
+void express_model(TuningSheet& sheet) {
+    if (!sheet.fit.model) return;
+    const bool percent = sheet.process_value_range && sheet.output_range;
+    sheet.model = percent ? in_percent(*sheet.fit.model, *sheet.process_value_range, *sheet.output_range) : *sheet.fit.model;
+    // The trends start where the test did.
+    if (!sheet.duty.rest_output && percent) {
+        // Kept inside the limits: a test may start with the output on one of them.
+        const double first = sheet.output_range->to_percent(sheet.fit.first_output);
+        sheet.duty.rest_output = std::clamp(first, sheet.duty.output_low, sheet.duty.output_high);
+    }
+    if (!sheet.duty.rest_process_value && percent)
+        sheet.duty.rest_process_value = sheet.process_value_range->to_percent(sheet.fit.offset);
+}
+
+SpeedChoice choose_speed(const TuningSheet& sheet, const TuningRequest& request) {
+    const FittedModel& fit = sheet.fit;
+    SpeedChoice speed;
+    const double scan = sheet.duty.scan_time_s.value_or(0.0);
+    speed.half_scan_s = 0.5 * scan;
+    speed.measurement_filter_time_s = request.as_found ? request.as_found->measurement_filter_time : 0.0;
+    const double D = speed.effective_dead_time_s = fit.dead_time + speed.half_scan_s + speed.measurement_filter_time_s;
+    if (request.time_constant) {
+        speed.time_constant_s = *request.time_constant;
+        speed.reason = "asked for";
+        return speed;
+    }
+    struct Floor {
+        double seconds;
+        const char* reason;
+    };
+    const auto error = fit.standard_errors.find("dead_time");
+    std::vector<Floor> floors;
+    if (fit.form == Form::integrating_plus_dead_time) {
+        floors.push_back({3.0 * D, "three times the effective dead time"});
+    } else {
+        floors.push_back({D, "the effective dead time"});
+        floors.push_back({0.1 * fit.lags[0], "a tenth of the lag"});
+    }
+    floors.push_back({3.0 * scan, "three scans"});
+    if (error != fit.standard_errors.end()) floors.push_back({2.0 * error->second, "two standard errors of the dead time"});
+    const auto slowest = std::max_element(floors.begin(), floors.end(),
+                                          [](const Floor& a, const Floor& b) { return a.seconds < b.seconds; });
+    speed.time_constant_s = slowest->seconds;
+    speed.reason = slowest->reason;
+    return speed;
+}
+
+// Settings from the model with the effective dead time in place of its own.
+std::optional<PidSettings> designed(TuningSheet& sheet) {
+    const SpeedChoice& speed = *sheet.speed;
+    const double D = speed.effective_dead_time_s;
+    const Synthesis synthesis =
+        synthesize(sheet.model->with_dead_time(D), {.time_constant = speed.time_constant_s});
+    sheet.obstacles = synthesis.obstacles;
+    if (!synthesis.settings) return std::nullopt;
+    PidSettings settings = *synthesis.settings;
+    settings.measurement_filter_time = speed.measurement_filter_time_s;
+    if (sheet.fit.form == Form::first_order_plus_dead_time && settings.integral_time)
+        settings.integral_time = std::min(*settings.integral_time, 4.0 * (speed.time_constant_s + D));
+    return settings;
+}
+
+std::optional<Figures> figures_of(const TuningSheet& sheet, const PidSettings& settings) {
+    const Duty& duty = sheet.duty;
+    const bool percent = sheet.process_value_range && sheet.output_range;
+    if (!duty.scan_time_s || !percent || (duty.setpoint_step == 0.0 && duty.load_step == 0.0)) return std::nullopt;
+    const double horizon = trend_horizon(sheet);
+    if (horizon > 1e6 * *duty.scan_time_s) return std::nullopt;  // more scans than a trend is worth
+    return figures(simulate(*sheet.model, settings, duty, horizon));
+}
+
+SheetController assessed(const TuningSheet& sheet, const PidSettings& settings, const std::optional<Entered>& entered) {
+    SheetController c{.settings = settings, .entered = entered};
+    c.margins = robustness(*sheet.model, settings, {.scan_time_s = sheet.duty.scan_time_s});
+    c.figures = figures_of(sheet, settings);
+    return c;
+}
+
+std::string weakness_of(const Robustness& m) {
+    if (m.verdict != Verdict::stable) return std::string("the loop would be ") + name_of(m.verdict);
+    if (*m.max_sensitivity > weak_max_sensitivity)
+        return "the largest sensitivity is " + short_text(*m.max_sensitivity) + ", above " + short_text(weak_max_sensitivity);
+    if (*m.gain_margin < weak_gain_margin)
+        return "the gain margin is " + short_text(*m.gain_margin) + ", below " + short_text(weak_gain_margin);
+    if (*m.phase_margin_deg < weak_phase_margin_deg)
+        return "the phase margin is " + short_text(*m.phase_margin_deg) + " degrees, below " + short_text(weak_phase_margin_deg);
+    return {};
+}
+
+void propose(TuningSheet& sheet, const TuningRequest& request) {
+    std::optional<PidSettings> settings = designed(sheet);
+    if (!settings) {
+        sheet.withheld.push_back("no P, PI or PID gives the response asked for; see the obstacles");
+        return;
+    }
+    std::optional<Entered> entered;
+    if (sheet.form) {
+        try {
+            entered = entered_as(*settings, *sheet.form);
+            settings = settings_from(*entered, *sheet.form);
+        } catch (const Error& e) {
+            // That this form cannot hold the settings is an outcome of the work, not bad input.
+            sheet.withheld.push_back(std::string("the controller cannot hold the settings: ") + e.what());
+            return;
+        }
+    }
+    const SheetController proposal = assessed(sheet, *settings, entered);
+    const std::string weakness = weakness_of(proposal.margins);
+    if (!weakness.empty()) {
+        if (proposal.margins.verdict != Verdict::stable || request.accept_weak_margins_by.empty()) {
+            sheet.withheld.push_back(weakness + (proposal.margins.verdict == Verdict::stable
+                                                     ? "; ask for a slower time constant, or name who accepts weak margins"
+                                                     : "; ask for a slower time constant"));
+            return;
+        }
+        sheet.weak_margins_accepted_by = request.accept_weak_margins_by;
+    }
+    sheet.proposed = proposal;
+}
+
+}  // namespace
+
+double trend_horizon(const TuningSheet& sheet) {
+    if (!sheet.speed) return 0.0;
+    const double settle = 8.0 * (sheet.speed->time_constant_s + sheet.speed->effective_dead_time_s);
+    const double both = sheet.duty.load_step != 0.0 ? sheet.duty.load_time_s + settle : settle;
+    const double scan = sheet.duty.scan_time_s.value_or(0.0);
+    return std::max({settle, both, 2.0 * scan});
+}
+
+TuningSheet tune(const Record& record, const TuningRequest& request) {
+    TuningSheet sheet = opened(record, request);
+    std::optional<PidSettings> as_found;
+    if (request.as_found) as_found = settings_from(*request.as_found, *sheet.form);
+    sheet.fit = identify(record, request.identify);
+    express_model(sheet);
+    for (const Finding& f : sheet.findings())
+        if (f.advice > Advice::tune_with_care) sheet.withheld.push_back(f.message);
+    if (sheet.model) {
+        sheet.speed = choose_speed(sheet, request);
+        if (as_found) sheet.as_found = assessed(sheet, *as_found, request.as_found);
+        if (sheet.withheld.empty()) propose(sheet, request);
+    } else if (sheet.withheld.empty()) {
+        sheet.withheld.push_back("no model could be fitted");
+    }
+    sheet.cautions = detail::cautions_for(sheet);
+    return sheet;
+}
+
+}  // namespace v0
+}  // namespace tauwright
