@@ -4,7 +4,7 @@ include(CMakePackageConfigHelpers)
 install(TARGETS tauwright tauwright_run EXPORT tauwright_targets
   ARCHIVE DESTINATION ${CMAKE_INSTALL_LIBDIR})
 install(DIRECTORY include/tauwright DESTINATION ${CMAKE_INSTALL_INCLUDEDIR} FILES_MATCHING PATTERN "*.hpp" PATTERN "*.def")
-if(TARGET tauwright_c)
+if(TAUWRIGHT_C)
   install(TARGETS tauwright_c EXPORT tauwright_targets LIBRARY DESTINATION ${CMAKE_INSTALL_LIBDIR}
     RUNTIME DESTINATION ${CMAKE_INSTALL_BINDIR})
   install(DIRECTORY capi/include/tauwright DESTINATION ${CMAKE_INSTALL_INCLUDEDIR} FILES_MATCHING PATTERN "*.h")
@@ -24,7 +24,7 @@ install(FILES ${CMAKE_CURRENT_BINARY_DIR}/tauwright-config.cmake ${CMAKE_CURRENT
 # pkg-config, relative to where the file lies, so that the tree may be moved.
 file(RELATIVE_PATH tauwright_prefix_from_pc "${CMAKE_INSTALL_FULL_LIBDIR}/pkgconfig" "${CMAKE_INSTALL_PREFIX}")
 foreach(name tauwright tauwright-c)
-  if(name STREQUAL "tauwright-c" AND NOT TARGET tauwright_c)
+  if(name STREQUAL "tauwright-c" AND NOT TAUWRIGHT_C)
     continue()
   endif()
   configure_file(cmake/${name}.pc.in ${CMAKE_CURRENT_BINARY_DIR}/${name}.pc @ONLY)

@@ -36,6 +36,8 @@ public:
     /// A frequency below which the loop is its low-frequency asymptote; 0 where it is finite at rest.
     double lowest() const noexcept { return lowest_; }
     double largest_root() const noexcept { return largest_root_; }
+    /// The phase is the same at every frequency: gain and integrators alone.
+    bool constant_phase() const noexcept { return zeros_.empty() && poles_.empty() && loop_.dead_time() == 0.0; }
     bool pole_on_axis() const noexcept { return pole_on_axis_; }
 
 private:

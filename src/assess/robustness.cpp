@@ -18,24 +18,30 @@ using namespace detail;
 constexpr double pi = std::numbers::pi;
 constexpr double infinity = std::numeric_limits<double>::infinity();
 
-/// Closed-loop poles in the right half plane without dead time; empty where one is on the axis.
-std::optional<int> poles_without_dead_time(const TransferFunction& loop) {
+/// Closed-loop poles of the loop without dead time.
+struct PoleCount {
+    int right = 0;    ///< in the right half plane
+    int on_axis = 0;  ///< on the imaginary axis, as far as rounding tells
+};
+
+std::optional<PoleCount> poles_without_dead_time(const TransferFunction& loop) {
     const Factors& f = loop.factors();
     Polynomial sum = expanded(f.lags, f.lag_pairs, f.integrators);
     const Polynomial above = expanded(f.leads, f.lead_pairs, f.zeros_at_origin);
     sum.resize(std::max(sum.size(), above.size()), 0.0);
     for (std::size_t i = 0; i < above.size(); ++i) sum[i] += f.gain * above[i];
     while (!sum.empty() && sum.back() == 0.0) sum.pop_back();
-    if (sum.size() < 2) return sum.empty() ? std::nullopt : std::optional<int>(0);
+    if (sum.size() < 2) return sum.empty() ? std::nullopt : std::optional<PoleCount>(PoleCount{});
     if (sum.front() == 0.0) return std::nullopt;
     std::reverse(sum.begin(), sum.end());
     const PolynomialRoots roots = polynomial_roots(sum);
-    int count = 0;
+    PoleCount count;
     for (std::size_t i = 0; i < roots.values.size(); ++i) {
         const double re = roots.values[i].real();
         // The coefficients were rounded on the way here: that close to the axis is on it.
-        if (std::abs(re) <= std::max(roots.error_radii[i], 1e-13 * std::abs(roots.values[i]))) return std::nullopt;
-        count += re > 0.0;
+        const bool on_axis = std::abs(re) <= std::max(roots.error_radii[i], 1e-13 * std::abs(roots.values[i]));
+        count.on_axis += on_axis;
+        count.right += !on_axis && re > 0.0;
     }
     return count;
 }
@@ -43,17 +49,26 @@ std::optional<int> poles_without_dead_time(const TransferFunction& loop) {
 // Poles cross the axis at the gain crossings, one pair each time the dead time turns L(jw) through
 // -1: to the right where the gain falls, to the left where it rises.
 std::optional<int> poles_followed(const LoopCurve& curve, const SweepResult& found) {
-    std::optional<int> count = poles_without_dead_time(curve.loop());
+    const auto start = poles_without_dead_time(curve.loop());
     const double dead_time = curve.loop().dead_time();
-    if (!count || dead_time == 0.0) return count;
+    if (!start || (dead_time == 0.0 && start->on_axis > 0)) return std::nullopt;
+    int count = start->right, left_axis = 0;
+    if (dead_time == 0.0) return count;
     for (double w : found.gain_crossings) {
         const std::complex<double> L0 = curve.loop().rational_at({0.0, w});
         double angle = std::arg(-L0);
         if (angle < 0.0) angle += 2.0 * pi;
         if (dead_time * w <= angle) continue;
-        const double turns = std::floor((dead_time * w - angle) / (2.0 * pi)) + 1.0;
-        *count += (curve.at(w).slope.real() < 0.0 ? 2 : -2) * static_cast<int>(turns);
+        auto turns = static_cast<int>(std::floor((dead_time * w - angle) / (2.0 * pi))) + 1;
+        const bool to_the_right = curve.at(w).slope.real() < 0.0;
+        if (start->on_axis > 0 && std::abs(std::arg(-L0)) < 1e-9) {  // a pair that starts on the axis
+            left_axis += 2;
+            // It comes from neither side: going left takes nothing off the count.
+            if (!to_the_right) --turns;
+        }
+        count += (to_the_right ? 2 : -2) * turns;
     }
+    if (left_axis != start->on_axis) return std::nullopt;
     return count;
 }
 
@@ -75,12 +90,13 @@ void decide(const LoopCurve& curve, const SweepResult& found, Robustness& r) {
         r.stable = false;
         return;
     }
-    if (curve.pole_on_axis() || !found.complete) return;
+    if (curve.pole_on_axis()) return;
     if (found.to_minus_one.distance < 1e-9) {
         r.verdict = Verdict::marginal;
         r.stable = false;
         return;
     }
+    if (!found.complete) return;
     const auto followed = poles_followed(curve, found), wound = poles_by_winding(curve, found);
     if (!followed || !wound || *followed != *wound || *followed < 0) return;
     r.unstable_poles = *followed;

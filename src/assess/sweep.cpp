@@ -51,7 +51,7 @@ public:
             const double growth = std::max(low, first);
             const double high = low + (dead_time > 0.0 ? std::min(growth, 1.0 / dead_time) : growth);
             Todo todo;
-            todo.phase = result_.phase_crossings.size() < most_crossings;
+            todo.phase = !curve_.constant_phase() && result_.phase_crossings.size() < most_crossings;
             visit(low, high, todo, 0);
             low = high;
             if (!result_.complete || finished(low)) break;

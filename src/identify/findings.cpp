@@ -122,9 +122,8 @@ double response_size(const FitData& data, Form form, const ParameterArray& p) {
 
 void find_weak_response(const FitData& data, const FitResult& result, FittedModel& fit) {
     const double size = response_size(data, fit.form, result.parameters);
-    const std::string key = fit.form == Form::integrating_plus_dead_time ? "slope" : "gain";
-    const auto error = fit.standard_errors.find(key);
-    const double certainty = error == fit.standard_errors.end() ? 1e9 : std::abs(fit.gain) / error->second;
+    const auto error = fit.standard_error(fit.form == Form::integrating_plus_dead_time ? "slope" : "gain");
+    const double certainty = error ? std::abs(fit.gain) / *error : 1e9;
     if (size >= 3.0 * fit.noise && certainty >= 5.0 && is_finite(certainty)) return;
     fit.findings.push_back({FindingCode::below_noise, Advice::test_again,
                             "the response is " + rounded(fit.noise > 0.0 ? size / fit.noise : 0.0) +
@@ -142,8 +141,7 @@ void find_early_end(const Record& record, const FitData& data, FittedModel& fit)
     const bool integrating = fit.form == Form::integrating_plus_dead_time;
     const double needed = integrating ? 2.0 * fit.dead_time : fit.dead_time + 3.0 * fit.lags[0];
     if (longest >= needed) return;
-    const auto error = fit.standard_errors.find(integrating ? "slope" : "gain");
-    const double spread = error == fit.standard_errors.end() ? 0.0 : error->second / std::abs(fit.gain);
+    const double spread = fit.standard_error(integrating ? "slope" : "gain").value_or(0.0) / std::abs(fit.gain);
     if (data.edges.size() > 8 && spread < 0.05) return;  // many short moves can say as much as a long one
     fit.findings.push_back({FindingCode::ends_early, spread < 0.1 ? Advice::tune_with_care : Advice::test_again,
                             "no move was held for longer than " + rounded(longest) + " s, the response needs " +

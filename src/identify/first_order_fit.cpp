@@ -221,8 +221,9 @@ void leave_small_minima(const FitData& data, const FitOptions& options, LeastSqu
     const double freedom = std::max(1.0, static_cast<double>(data.t.size()) - 4.0);
     for (int round = 0; round < 3; ++round) {
         const double variance = best.equations.sum_of_squares / freedom;
-        const auto covariance = inverse_of_free(best.equations, options.free);
-        const double spread = std::sqrt(covariance[at_dead_time][at_dead_time] * variance);
+        const auto inverse = inverse_of_free(best.equations, options.free);
+        if (!inverse) return;
+        const double spread = std::sqrt((*inverse)[at_dead_time][at_dead_time] * variance);
         if (!(spread > 0.0)) return;
         const auto better = better_dead_time(data, options, best, spread);
         if (!better) return;

@@ -2,6 +2,7 @@
 
 #include <algorithm>
 #include <cmath>
+#include <limits>
 
 #include "identify/findings.hpp"
 #include "identify/process_fit.hpp"
@@ -141,11 +142,15 @@ AtStart at_start(const Candidate& c, double noise) {
     T[at_offset][at_curvature] = m * m;
     T[at_drift][at_curvature] = -2.0 * m;
     const auto inverse = inverse_of_free(c.result.equations, c.options.free);
+    if (!inverse) {  // parameters that the record cannot tell apart may be anything
+        for (std::size_t i = 0; i < most_parameters; ++i) out.covariance[i][i] = std::numeric_limits<double>::infinity();
+        return out;
+    }
     for (std::size_t i = 0; i < most_parameters; ++i)
         for (std::size_t j = 0; j < most_parameters; ++j)
             for (std::size_t k = 0; k < most_parameters; ++k)
                 for (std::size_t l = 0; l < most_parameters; ++l)
-                    out.covariance[i][j] += T[i][k] * inverse[k][l] * T[j][l] * noise * noise;
+                    out.covariance[i][j] += T[i][k] * (*inverse)[k][l] * T[j][l] * noise * noise;
     return out;
 }
 
@@ -182,7 +187,6 @@ void report(const Candidate& c, const FitData& data, FittedModel& fit) {
         if (!c.options.free[at]) continue;
         fit.parameter_names.emplace_back(name);
         order.push_back(at);
-        fit.standard_errors[name] = std::sqrt(std::max(start.covariance[at][at], 0.0));
     }
     for (ParameterIndex i : order)
         for (ParameterIndex j : order) fit.covariance.push_back(start.covariance[i][j]);
@@ -216,6 +220,13 @@ FittedModel identify(const Record& record, const IdentifyOptions& options) {
     report(best, data, fit);
     look_at_fit(record, data, best.result, best.options, fit);
     return fit;
+}
+
+std::optional<double> FittedModel::standard_error(std::string_view parameter) const noexcept {
+    const std::size_t n = parameter_names.size();
+    for (std::size_t i = 0; i < n && covariance.size() == n * n; ++i)
+        if (parameter_names[i] == parameter) return std::sqrt(std::max(covariance[i * n + i], 0.0));
+    return std::nullopt;
 }
 
 std::vector<double> fitted_response(const FittedModel& fit, const Record& record) {

@@ -140,10 +140,11 @@ std::optional<ParameterArray> better_dead_time(const FitData& data, const FitOpt
     auto without_lag = options.free;
     without_lag[at_lag] = false;
     const auto inverse_cut = inverse_of_free(found.equations, without_lag);
-    const double valley = inverse[at_dead_time][at_dead_time], cut = inverse_cut[at_dead_time][at_dead_time];
+    if (!inverse || !inverse_cut) return std::nullopt;
+    const double valley = (*inverse)[at_dead_time][at_dead_time], cut = (*inverse_cut)[at_dead_time][at_dead_time];
     const double give_back = valley > 0.0 && cut > 0.0 ? 1.0 / cut - 1.0 / valley : 0.0;
     const double lag_per_dead_time =
-        options.free[at_lag] && valley > 0.0 ? inverse[at_lag][at_dead_time] / valley : 0.0;
+        options.free[at_lag] && valley > 0.0 ? (*inverse)[at_lag][at_dead_time] / valley : 0.0;
 
     double lowest = here - 1e-3 * found.equations.sum_of_squares / std::max<double>(1.0, static_cast<double>(data.t.size()));
     std::optional<ParameterArray> best;

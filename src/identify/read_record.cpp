@@ -133,7 +133,11 @@ std::optional<Range> range_in(std::string_view comment, std::string_view key, co
         comment = trimmed(comment.substr(word.size()));
     }
     range.unit = std::string(comment);
-    check(range, key);
+    try {
+        check(range, key);
+    } catch (const Error& e) {
+        throw Error(e.code(), name + ": the comment " + std::string(key) + ": " + e.what());
+    }
     return range;
 }
 

@@ -117,13 +117,13 @@ LeastSquaresResult minimize(const LeastSquaresProblem& problem, const ParameterA
     return best;
 }
 
-std::array<std::array<double, most_parameters>, most_parameters> inverse_of_free(
-    const NormalEquations& equations, const std::array<bool, most_parameters>& free) {
-    std::array<std::array<double, most_parameters>, most_parameters> inverse{};
+std::optional<ParameterMatrix> inverse_of_free(const NormalEquations& equations,
+                                               const std::array<bool, most_parameters>& free) {
+    ParameterMatrix inverse{};
     const auto chosen = indices(free);
     const ScaledSystem system = scaled(equations, chosen);
     const Eigen::LDLT<Matrix> factors(system.gram);
-    if (chosen.empty() || !(factors.vectorD().minCoeff() > 1e-14)) return inverse;
+    if (chosen.empty() || !(factors.vectorD().minCoeff() > 1e-14)) return std::nullopt;
     const Matrix inverse_scaled = factors.solve(Matrix::Identity(system.gram.rows(), system.gram.cols()));
     for (std::size_t i = 0; i < chosen.size(); ++i)
         for (std::size_t j = 0; j < chosen.size(); ++j) {

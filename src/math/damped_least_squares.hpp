@@ -4,6 +4,7 @@
 #include <array>
 #include <cstddef>
 #include <functional>
+#include <optional>
 #include <vector>
 
 namespace tauwright {
@@ -41,9 +42,11 @@ struct LeastSquaresResult {
 
 LeastSquaresResult minimize(const LeastSquaresProblem& problem, const ParameterArray& start);
 
-/// Inverse of the free part of `gram`, as a full matrix with zeros elsewhere; all zero where singular.
-std::array<std::array<double, most_parameters>, most_parameters> inverse_of_free(
-    const NormalEquations& equations, const std::array<bool, most_parameters>& free);
+using ParameterMatrix = std::array<std::array<double, most_parameters>, most_parameters>;
+
+/// Inverse of the free part of `gram`, as a full matrix with zeros elsewhere; empty where singular.
+std::optional<ParameterMatrix> inverse_of_free(const NormalEquations& equations,
+                                               const std::array<bool, most_parameters>& free);
 
 }  // namespace detail
 }  // namespace v0

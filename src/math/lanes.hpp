@@ -44,11 +44,15 @@ public:
         return {a.low_ < b.low_ ? a.low_ : b.low_, a.high_ < b.high_ ? a.high_ : b.high_};
     }
     friend Lanes magnitude(Lanes a) noexcept {
-        return {a.low_ < -a.low_ ? -a.low_ : a.low_, a.high_ < -a.high_ ? -a.high_ : a.high_};
+        constexpr long long all_but_sign = 0x7fffffffffffffff;
+        constexpr Bits mask{all_but_sign, all_but_sign};
+        return {reinterpret_cast<Two>(reinterpret_cast<Bits>(a.low_) & mask),
+                reinterpret_cast<Two>(reinterpret_cast<Bits>(a.high_) & mask)};
     }
 
 private:
     using Two = double __attribute__((vector_size(16)));
+    using Bits = long long __attribute__((vector_size(16)));
 
     Lanes(Two low, Two high) noexcept : low_(low), high_(high) {}
 

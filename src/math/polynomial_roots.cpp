@@ -2,7 +2,6 @@
 
 #include <algorithm>
 #include <cmath>
-#include <limits>
 #include <stdexcept>
 
 #include "math/double_double.hpp"
@@ -63,7 +62,8 @@ void append_quadratic(double a, double b, double c, std::vector<Factor>& factors
         for (double y : {q / a, c / q}) factors.push_back(unscaled(y, 0.0, slack * std::abs(y), e));
     } else {
         const double re = -0.5 * b / a, im = 0.5 * std::sqrt(-discriminant) / std::abs(a);
-        factors.push_back(unscaled(re, im, slack * std::sqrt(re * re + im * im), e));
+        const Factor pair = unscaled(re, im, slack * std::sqrt(re * re + im * im), e);
+        factors.insert(factors.end(), pair.im == 0.0 ? 2 : 1, pair);  // out of range it is two real roots
     }
 }
 

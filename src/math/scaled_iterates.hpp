@@ -43,7 +43,9 @@ public:
         return Lanes::load(r);
     }
     /// The coefficients of y^k.
-    Lanes coefficients(std::size_t k, std::size_t c) const noexcept { return Lanes::load(&coefficient_[k * lanes_ + c]); }
+    Lanes coefficients(std::size_t k, std::size_t c) const noexcept {
+        return Lanes::load(&coefficient_[k * lanes_ + c]);
+    }
     /// The leading coefficients, times 2^(scale[j] - scale[i]) for every j where that is more than 1.
     Lanes lead(std::size_t c) const noexcept { return Lanes::load(&lead_[c]); }
     /// own y_i - other y_j, the difference x_i - x_j in the larger of the two scales.
@@ -71,7 +73,7 @@ private:
     std::vector<double> mantissa_;
     std::vector<int> exponent_, scale_;
     std::vector<double> re_, im_, lead_;
-    std::vector<double> coefficient_;   // [k * lanes_ + i]
+    std::vector<double> coefficient_;  // [k * lanes_ + i]
     std::vector<double> own_, other_;  // [j * lanes_ + i]
 };
 

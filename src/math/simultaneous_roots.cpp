@@ -15,10 +15,12 @@ namespace detail {
 namespace {
 
 constexpr double unit_roundoff = 0x1p-53;
+constexpr double hair = 0x1p-56;
 constexpr double infinity = std::numeric_limits<double>::infinity();
-// Far beyond what any polynomial tried has needed (31 and 28, by multiple roots); they make sure that it ends.
-constexpr int most_approach_passes = 60;
-constexpr int most_refine_passes = 60;
+// Simple roots take about 8 and 2 passes. Multiple ones creep, and here and there two of them keep stepping within
+// the rounding error of p; the radii hold wherever they are stopped.
+constexpr int most_approach_passes = 50;
+constexpr int most_refine_passes = 40;
 
 using Flags = std::vector<unsigned char>;
 
@@ -41,6 +43,7 @@ private:
     bool improve();
     bool wants_move(std::size_t i);
     void move_lanes(std::size_t c, const bool* moves);
+    bool same_place(std::size_t i, std::size_t j) const;
     Lanes same_place_lanes(std::size_t c, std::size_t j, Lanes square) const;
     bool has_earlier_twin(std::size_t i) const;
     void separate(std::size_t i);
@@ -50,15 +53,15 @@ private:
     double n_;
     Flags active_, fresh_;
     std::vector<double> value_re_, value_im_, noise_;  // p(y_i), and a bound on its error
-    std::vector<double> correction_re_, correction_im_, last_correction_;
+    std::vector<double> correction_re_, correction_im_, last_correction_, parted_;  // parted_: see separate()
     std::vector<double> radius_, nearest_, places_;  // nearest_: squared; places_: roots at this very place
 };
 
 Iteration::Iteration(std::span<const double> coefficients) : y_(coefficients), n_(static_cast<double>(y_.degree())) {
     active_.resize(y_.lanes());
     fresh_.resize(y_.lanes());
-    for (auto* row : {&value_re_, &value_im_, &noise_, &correction_re_, &correction_im_, &last_correction_, &radius_,
-                      &nearest_, &places_})
+    for (auto* row : {&value_re_, &value_im_, &noise_, &correction_re_, &correction_im_, &last_correction_, &parted_,
+                      &radius_, &nearest_, &places_})
         row->resize(y_.lanes());
 }
 
@@ -118,23 +121,30 @@ void Iteration::evaluate_lanes(std::size_t c) {
     const Lanes size = y_.moduli(c);
     const Lanes zero(0.0);
     const auto y_re = halves(y.re), y_im = halves(y.im);
-    CompensatedComplex<Lanes> h{y_.coefficients(y_.degree(), c), zero, zero, zero};
-    Lanes bound = magnitude(h.re);
-    for (std::size_t k = y_.degree(); k-- > 0;) {
-        const Lanes a = y_.coefficients(k, c);
-        multiply_add(h, y_re, y_im, a);
-        bound = bound * size + magnitude(a);
-    }
+    CompensatedComplex<Lanes> h{y_.coefficients(y_.degree(), c), zero, zero, zero, zero};
+    for (std::size_t k = y_.degree(); k-- > 0;) multiply_add(h, y_re, y_im, size, y_.coefficients(k, c));
     const ComplexLanes p{h.re + h.re_error, h.im + h.im_error};
-    const Lanes error = Lanes(4.0 * n_ * (3.0 * n_ + 4.0) * unit_roundoff * unit_roundoff) * bound;
     p.store(&value_re_[c], &value_im_[c]);
-    (error + Lanes(unit_roundoff) * (magnitude(p.re) + magnitude(p.im))).store(&noise_[c]);
+    const Lanes last_rounding = Lanes(unit_roundoff) * (magnitude(p.re) + magnitude(p.im));
+    const Lanes underflow(0x1p-590);  // at most, here and in scaling
+    (Lanes(4.0 * (n_ + 1.0) * unit_roundoff) * h.error_size + last_rounding + underflow).store(&noise_[c]);
 }
 
-// Closer than a double tells apart: 1 where x_i and x_j are one place, given the square of their difference.
+// Whether x_i and x_j are one place, closer than a double tells apart; written so that both see it alike.
+bool Iteration::same_place(std::size_t i, std::size_t j) const {
+    const double own = y_.own(i, j), other = y_.other(i, j);
+    const double re = own * y_.re(i) - other * y_.re(j), im = own * y_.im(i) - other * y_.im(j);
+    const double size_j = std::abs(y_.re(j)) + std::abs(y_.im(j));
+    const double size = own * (std::abs(y_.re(i)) + std::abs(y_.im(i))) + other * size_j;
+    return re * re + im * im <= hair * hair * (size * size);
+}
+
+// The same for four, given the squares of their differences: 1 or 0.
 Lanes Iteration::same_place_lanes(std::size_t c, std::size_t j, Lanes square) const {
-    const Lanes own = y_.own_lanes(c, j);
-    return at_most(square, own * own * squared(y_.at(c)) * Lanes(0x1p-105));
+    const ComplexLanes y = y_.at(c);
+    const Lanes size_j(std::abs(y_.re(j)) + std::abs(y_.im(j)));
+    const Lanes size = y_.own_lanes(c, j) * (magnitude(y.re) + magnitude(y.im)) + y_.other_lanes(c, j) * size_j;
+    return at_most(square, Lanes(hair * hair) * (size * size));
 }
 
 // Weierstrass corrections p(y_i) / (a_n prod (y_i - y_j)). n times their moduli, with the error of p, are the
@@ -158,24 +168,24 @@ void Iteration::correct_lanes(std::size_t c) {
     const double factor = n_ * (1.0 + 16.0 * n_ * unit_roundoff);  // with the rounding of the product
     for (std::size_t l = 0; l < Lanes::count; ++l) {
         const std::size_t i = c + l;
+        const double p = length(value_re_[i], value_im_[i]) + noise_[i];
         const bool in_range = square[l] > 1e-280 && square[l] < 1e280;
-        radius_[i] = in_range ? factor * (length(value_re_[i], value_im_[i]) + noise_[i]) / std::sqrt(square[l]) : infinity;
+        radius_[i] = in_range ? factor * p / std::sqrt(square[l]) : infinity;
     }
 }
 
 bool Iteration::has_earlier_twin(std::size_t i) const {
-    const double within = 0x1p-52 * y_.modulus(i);
     for (std::size_t j = 0; j < i; ++j)
-        if (y_.distance(i, j) <= within * y_.own(i, j)) return true;
+        if (same_place(i, j)) return true;
     return false;
 }
 
-// Two roots at one place would each hide the other from the correction: part them by as little as the error
-// of p allows, which for a double root is as well as it can be known.
+// Two roots at one place would each hide the other from the correction: part them by about what the error of p
+// allows. If the next correction leads back, it is a multiple root, and they stay parted.
 void Iteration::separate(std::size_t i) {
     const double y = y_.modulus(i);
-    const double apart = std::pow(radius_[i] / y, 1.0 / places_[i]);
-    y_.move(i, -y * std::clamp(apart, 8.0 * unit_roundoff, 0x1p-8), 0.0);
+    parted_[i] = y * std::clamp(std::pow(radius_[i] / y, 1.0 / places_[i]), 8.0 * unit_roundoff, 0x1p-8);
+    y_.move(i, -parted_[i], 0.0);
 }
 
 bool Iteration::wants_move(std::size_t i) {
@@ -183,7 +193,9 @@ bool Iteration::wants_move(std::size_t i) {
     const bool stalled = size >= 0.5 * last_correction_[i];
     last_correction_[i] = size;
     if (size <= 1.5 * unit_roundoff * y_.modulus(i)) return false;
-    if (stalled && length(value_re_[i], value_im_[i]) <= noise_[i]) active_[i] = 0;
+    const bool in_noise = length(value_re_[i], value_im_[i]) <= 16.0 * noise_[i];
+    if (size <= 4.0 * parted_[i] || (stalled && in_noise)) active_[i] = 0;
+    parted_[i] = 0.0;
     return active_[i] != 0;
 }
 

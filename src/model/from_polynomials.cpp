@@ -1,3 +1,4 @@
+#include <complex>
 #include <vector>
 
 #include "math/polynomial_roots.hpp"
@@ -15,6 +16,60 @@ struct Side {
     std::vector<QuadraticFactor> pairs;
 };
 
+// The derivative of order `times`, highest power first.
+std::vector<double> derivative(std::span<const double> p, std::size_t times) {
+    std::vector<double> d(p.begin(), p.end());
+    for (; times > 0; --times) {
+        const std::size_t degree = d.size() - 1;
+        for (std::size_t i = 0; i < degree; ++i) d[i] *= static_cast<double>(degree - i);
+        d.pop_back();
+    }
+    return d;
+}
+
+// An m-fold root is a simple root of the derivative of order m - 1, where Newton's iteration is at ease.
+std::complex<double> repeated_root(std::span<const double> polynomial, std::size_t times, std::complex<double> near) {
+    const std::vector<double> p = derivative(polynomial, times - 1);
+    for (int pass = 0; pass < 4; ++pass) {
+        std::complex<double> value = 0.0, slope = 0.0;
+        for (double c : p) {
+            slope = slope * near + value;
+            value = value * near + c;
+        }
+        if (slope == 0.0) break;
+        near -= value / slope;
+    }
+    return near;
+}
+
+// Roots that rounding cannot tell apart become equal: their mean is far more accurate than they are,
+// and a repeated factor stays recognizable as one.
+std::vector<std::complex<double>> merged(std::span<const double> polynomial, detail::PolynomialRoots found) {
+    auto& roots = found.values;
+    std::vector<bool> taken(roots.size(), false);
+    for (std::size_t i = 0; i < roots.size(); ++i) {
+        if (taken[i]) continue;
+        std::vector<std::size_t> cluster{i};
+        std::complex<double> sum = roots[i];
+        for (std::size_t j = i + 1; j < roots.size(); ++j) {
+            if (taken[j] || std::abs(roots[j] - roots[i]) > found.error_radii[i] + found.error_radii[j]) continue;
+            cluster.push_back(j);
+            sum += roots[j];
+        }
+        if (cluster.size() < 2) continue;
+        std::complex<double> mean = sum / static_cast<double>(cluster.size());
+        // A cluster on the real axis holds its own conjugates; one off it has a mirrored twin.
+        const bool real = std::abs(mean.imag()) <= found.error_radii[i];
+        const std::complex<double> polished = repeated_root(polynomial, cluster.size(), real ? mean.real() : mean);
+        if (std::abs(polished - mean) <= found.error_radii[i]) mean = polished;
+        for (std::size_t j : cluster) {
+            roots[j] = real ? mean.real() : mean;
+            taken[j] = true;
+        }
+    }
+    return roots;
+}
+
 Side factored(const char* name, std::span<const double> coefficients) {
     for (std::size_t i = 0; i < coefficients.size(); ++i)
         detail::require_finite(std::string(name) + "[" + std::to_string(i) + "]", coefficients[i]);
@@ -28,15 +83,12 @@ Side factored(const char* name, std::span<const double> coefficients) {
         coefficients = coefficients.first(coefficients.size() - 1);
     }
     side.lowest = coefficients.back();
-    const auto roots = detail::polynomial_roots(coefficients).values;
-    for (std::size_t i = 0; i < roots.size(); ++i) {
-        if (roots[i].imag() == 0.0) {
-            side.real.push_back(-1.0 / roots[i].real());
-        } else {
-            const double T = 1.0 / std::abs(roots[i]);
-            side.pairs.push_back({.time_constant = T, .damping = -roots[i].real() * T});
-            ++i;  // its conjugate
-        }
+    const auto roots = merged(coefficients, detail::polynomial_roots(coefficients));
+    for (const auto& root : roots) {
+        if (root.imag() < 0.0) continue;  // its conjugate speaks for it
+        const double T = 1.0 / std::abs(root);
+        if (root.imag() == 0.0) side.real.push_back(-1.0 / root.real());
+        else side.pairs.push_back({.time_constant = T, .damping = -root.real() * T});
     }
     return side;
 }

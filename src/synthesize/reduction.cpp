@@ -32,6 +32,21 @@ int strip_origin(Polynomial& p) {
     return count;
 }
 
+// Divides p by (T s + 1) where that leaves no rest.
+bool divided_by(Polynomial& p, double T) {
+    if (p.size() < 2) return false;
+    const double root = -1.0 / T;
+    double value = 0.0, size = 0.0;
+    for (std::size_t k = p.size(); k-- > 0;) {
+        value = value * root + p[k];
+        size = size * std::abs(root) + std::abs(p[k]);
+    }
+    if (std::abs(value) > 1e-12 * size) return false;
+    for (std::size_t k = 1; k < p.size(); ++k) p[k] -= T * p[k - 1];
+    p.pop_back();
+    return true;
+}
+
 // Settings of (ki + k1 s + k2 s^2) / (s (filter s + 1)); the filter goes to the derivative, or to the
 // process value where the derivative would come out negative.
 std::optional<PidSettings> settings_of(double ki, double k1, double k2, double filter, double& negative) {
@@ -77,7 +92,9 @@ Reduced taylor_settings(const TransferFunction& process, const TransferFunction&
     const int integrating = strip_origin(P) + M.integrators() - M.zeros_at_origin();
     if (integrating < 0 || integrating > 1) return reduced;  // differentiates at rest, or integrates twice
 
-    const Factors& m = M.factors();
+    Factors m = M.factors();
+    // Where 1 - T vanishes at a pole of the process, as it must at unstable ones, both sides share it.
+    std::erase_if(m.leads, [&](double T) { return divided_by(P, T); });
     Polynomial above = expanded(m.leads, m.lead_pairs);
     const double later = response.dead_time() - process.dead_time();
     if (later > 0.0) above = product(above, {1.0, -later});

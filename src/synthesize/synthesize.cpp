@@ -1,5 +1,7 @@
 #include "tauwright/synthesize/synthesize.hpp"
 
+#include <algorithm>
+
 #include "synthesize/default_response.hpp"
 #include "synthesize/obstacles.hpp"
 #include "synthesize/reduction.hpp"
@@ -16,7 +18,9 @@ TransferFunction response_asked(const TransferFunction& process, const DesiredRe
                         std::string(desired.time_constant ? "time_constant" : "order") + "; give one or the other");
     if (desired.transfer_function) {
         const TransferFunction& T = *desired.transfer_function;
-        if (T.unstable_poles() > 0 || T.integrators() > 0)
+        const auto& pairs = T.factors().lag_pairs;
+        const bool on_axis = std::any_of(pairs.begin(), pairs.end(), [](const QuadraticFactor& f) { return f.damping == 0.0; });
+        if (T.unstable_poles() > 0 || T.integrators() > 0 || on_axis)
             throw Error(error_code::out_of_domain, "desired.transfer_function is " + T.text() +
                                                        ", which is not stable; ask for a response that settles");
         return T;

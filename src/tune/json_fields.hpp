@@ -59,7 +59,6 @@ template <class Visitor, class T> void describe_fit(Visitor& v, T& x) {
     v("offset", x.offset);
     v("drift_per_s", x.drift_per_s);
     v("drift_per_s2", x.drift_per_s2);
-    v("standard_errors", x.standard_errors);
     v("parameter_names", x.parameter_names);
     v("covariance", x.covariance);
     v("sum_of_squares", x.sum_of_squares);

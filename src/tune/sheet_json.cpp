@@ -39,10 +39,6 @@ template <class T> Json written(const T& x) {
         Json list = Json::array();
         for (const auto& item : x) list.push_back(written(item));
         return list;
-    } else if constexpr (std::is_same_v<T, std::map<std::string, double>>) {
-        Json object = Json::object();
-        for (const auto& [key, value] : x) object[key] = written(value);
-        return object;
     } else if constexpr (std::is_same_v<T, double>) {
         return is_finite(x) ? Json(x) : Json("infinite");
     } else if constexpr (is_word<T>) {
@@ -97,10 +93,6 @@ template <class T> void read(const Json& json, const std::string& path, T& x) {
             read(json[i], path + "/" + std::to_string(i), item);
             x.push_back(std::move(item));
         }
-    } else if constexpr (std::is_same_v<T, std::map<std::string, double>>) {
-        if (!json.is_object()) malformed(path, "is not an object");
-        x.clear();
-        for (const auto& [key, value] : json.items()) read(value, path + "/" + key, x[key]);
     } else if constexpr (std::is_same_v<T, double>) {
         if (json.is_number()) x = json.get<double>();
         else if (json == "infinite") x = std::numeric_limits<double>::infinity();
@@ -138,6 +130,11 @@ Json json_of(const TuningSheet& sheet) {
     return document;
 }
 
+// Names and units given by the caller may be any bytes; what is not UTF-8 is replaced, not refused.
+std::string text_of_json(const Json& json, int indent) {
+    return json.dump(indent, ' ', false, Json::error_handler_t::replace);
+}
+
 TuningSheet sheet_of(const Json& document) {
     if (!document.is_object()) malformed("", "is not an object");
     const auto schema = document.find("schema"), number = document.find("schema_version");
@@ -153,8 +150,7 @@ TuningSheet sheet_of(const Json& document) {
 }  // namespace detail
 
 std::string TuningSheet::json() const {
-    // Names given by the caller may be any bytes; what is not UTF-8 is replaced rather than refused.
-    return detail::json_of(*this).dump(2, ' ', false, detail::Json::error_handler_t::replace) + "\n";
+    return detail::text_of_json(detail::json_of(*this), 2) + "\n";
 }
 
 TuningSheet TuningSheet::from_json(std::string_view json) {
@@ -172,11 +168,11 @@ std::vector<SheetDifference> differences(const TuningSheet& earlier, const Tunin
     std::vector<SheetDifference> list;
     for (const auto& [path, value] : a.items()) {
         const auto other = b.find(path);
-        if (other == b.end()) list.push_back({path, value.dump(), ""});
-        else if (*other != value) list.push_back({path, value.dump(), other->dump()});
+        if (other == b.end()) list.push_back({path, detail::text_of_json(value, -1), ""});
+        else if (*other != value) list.push_back({path, detail::text_of_json(value, -1), detail::text_of_json(*other, -1)});
     }
     for (const auto& [path, value] : b.items())
-        if (!a.contains(path)) list.push_back({path, "", value.dump()});
+        if (!a.contains(path)) list.push_back({path, "", detail::text_of_json(value, -1)});
     return list;
 }
 

@@ -16,6 +16,7 @@ constexpr int sheet_schema_version = 1;
 
 Json json_of(const TuningSheet& sheet);
 TuningSheet sheet_of(const Json& document);
+std::string text_of_json(const Json& json, int indent);
 
 }  // namespace detail
 }  // namespace v0

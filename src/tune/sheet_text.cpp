@@ -64,7 +64,7 @@ private:
 
 std::string with_error(const FittedModel& fit, double value, const char* key, const std::string& unit) {
     std::string text = shown(value);
-    if (const auto it = fit.standard_errors.find(key); it != fit.standard_errors.end()) text += " +- " + shown(it->second, 2);
+    if (const auto error = fit.standard_error(key)) text += " +- " + shown(*error, 2);
     return unit.empty() ? text : text + " " + unit;
 }
 
@@ -76,7 +76,8 @@ void write_input(Page& page, const TuningSheet& s) {
     page.title("Tuning sheet" + (s.loop_name.empty() ? std::string() : ": " + s.loop_name));
     page.item("Record", s.source.empty() ? "arrays" : s.source);
     if (!s.first_stamp.empty()) page.item("Begins", s.first_stamp);
-    page.item("SHA-256 of the input", s.input_sha256);
+    page.item("SHA-256 of the input", "");
+    page.line("    " + s.input_sha256);
     const auto range = [](const std::optional<Range>& r) {
         return r ? shown(r->low) + " to " + shown(r->high) + (r->unit.empty() ? "" : " " + r->unit) : std::string("not given");
     };

@@ -98,7 +98,6 @@ SpeedChoice choose_speed(const TuningSheet& sheet, const TuningRequest& request)
         double seconds;
         const char* reason;
     };
-    const auto error = fit.standard_errors.find("dead_time");
     std::vector<Floor> floors;
     if (fit.form == Form::integrating_plus_dead_time) {
         floors.push_back({3.0 * D, "three times the effective dead time"});
@@ -107,7 +106,8 @@ SpeedChoice choose_speed(const TuningSheet& sheet, const TuningRequest& request)
         floors.push_back({0.1 * fit.lags[0], "a tenth of the lag"});
     }
     floors.push_back({3.0 * scan, "three scans"});
-    if (error != fit.standard_errors.end()) floors.push_back({2.0 * error->second, "two standard errors of the dead time"});
+    if (const auto error = fit.standard_error("dead_time"))
+        floors.push_back({2.0 * *error, "two standard errors of the dead time"});
     const auto slowest = std::max_element(floors.begin(), floors.end(),
                                           [](const Floor& a, const Floor& b) { return a.seconds < b.seconds; });
     speed.time_constant_s = slowest->seconds;

@@ -34,9 +34,9 @@ TEST_CASE("BoxBOD to the certified digits", "[published]") {
     CHECK(fit.gain == Approx(2.1380940889e+02).epsilon(1e-10));
     CHECK(1.0 / fit.lags[0] == Approx(5.4723748542e-01).epsilon(1e-10));
     CHECK(fit.sum_of_squares == Approx(1.1680088766e+03).epsilon(1e-10));
-    CHECK(fit.standard_errors.at("gain") == Approx(1.2354515176e+01).epsilon(1e-9));
+    CHECK(fit.standard_error("gain").value() == Approx(1.2354515176e+01).epsilon(1e-9));
     // The certificate gives the error of the rate 1/lag: 1.0455993237E-01.
-    CHECK(fit.standard_errors.at("lag_1") / (fit.lags[0] * fit.lags[0]) == Approx(1.0455993237e-01).epsilon(1e-9));
+    CHECK(fit.standard_error("lag_1").value() / (fit.lags[0] * fit.lags[0]) == Approx(1.0455993237e-01).epsilon(1e-9));
 }
 
 // Source: NIST Statistical Reference Datasets, Misra1a (lower difficulty), certified values.
@@ -47,7 +47,7 @@ TEST_CASE("Misra1a to the certified digits", "[published]") {
     CHECK(fit.gain == Approx(2.3894212918e+02).epsilon(1e-9));
     CHECK(1.0 / fit.lags[0] == Approx(5.5015643181e-04).epsilon(1e-9));
     CHECK(fit.sum_of_squares == Approx(1.2455138894e-01).epsilon(1e-9));
-    CHECK(fit.standard_errors.at("gain") == Approx(2.7070075241e+00).epsilon(1e-8));
+    CHECK(fit.standard_error("gain").value() == Approx(2.7070075241e+00).epsilon(1e-8));
 }
 
 TEST_CASE("the truth of noise-free records comes back", "[closed form]") {
@@ -71,9 +71,9 @@ TEST_CASE("estimates scatter about the truth as their standard errors say", "[in
     for (unsigned seed = 1; seed <= count; ++seed) {
         const Truth truth{.samples = 400};
         const FittedModel fit = identify(simulated::record(truth, seed), {.form = Form::first_order_plus_dead_time});
-        const double z[3] = {(fit.gain - truth.gain) / fit.standard_errors.at("gain"),
-                             (fit.lags[0] - truth.lag) / fit.standard_errors.at("lag_1"),
-                             (fit.dead_time - truth.dead_time) / fit.standard_errors.at("dead_time")};
+        const double z[3] = {(fit.gain - truth.gain) / fit.standard_error("gain").value(),
+                             (fit.lags[0] - truth.lag) / fit.standard_error("lag_1").value(),
+                             (fit.dead_time - truth.dead_time) / fit.standard_error("dead_time").value()};
         for (int i = 0; i < 3; ++i) {
             INFO("seed " << seed << ", parameter " << i << ", z " << z[i]);
             CHECK(std::abs(z[i]) < 6.0);  // a wrong minimum would be far beyond
@@ -95,9 +95,9 @@ TEST_CASE("standard errors meet the Cramer-Rao bound", "[published]") {
         const FittedModel fit = identify(simulated::record(truth, seed), {.form = Form::first_order_plus_dead_time});
         // Errors scale with the residual noise; take that out to compare with the bound.
         const double scale = truth.noise / fit.noise;
-        mean[0] += scale * fit.standard_errors.at("gain") / fit.gain / count;
-        mean[1] += scale * fit.standard_errors.at("lag_1") / fit.lags[0] / count;
-        mean[2] += scale * fit.standard_errors.at("dead_time") / truth.dead_time / count;
+        mean[0] += scale * fit.standard_error("gain").value() / fit.gain / count;
+        mean[1] += scale * fit.standard_error("lag_1").value() / fit.lags[0] / count;
+        mean[2] += scale * fit.standard_error("dead_time").value() / truth.dead_time / count;
     }
     for (int i = 0; i < 3; ++i) CHECK(mean[i] == Approx(bound[i]).epsilon(0.12));
 }
@@ -108,7 +108,7 @@ TEST_CASE("fixed parameters stay and the others adapt", "[closed form]") {
     const FittedModel fit = identify(record, {.fixed = {.dead_time = truth.dead_time, .offset = truth.rest_value}});
     CHECK(fit.dead_time == truth.dead_time);
     CHECK(fit.offset == Approx(truth.rest_value).epsilon(1e-14));
-    CHECK(fit.standard_errors.count("dead_time") == 0);
+    CHECK_FALSE(fit.standard_error("dead_time"));
     CHECK(fit.lags.at(0) == Approx(truth.lag).epsilon(1e-9));
     const FittedModel slope = identify(record, {.fixed = {.slope = 0.05}});
     CHECK(slope.form == Form::integrating_plus_dead_time);
@@ -128,8 +128,8 @@ TEST_CASE("an integrating process off balance is still told", "[closed form]") {
     Truth truth{.gain = 0.02, .lag = 0.0, .noise = 0.05, .drift = 0.03};
     const FittedModel fit = identify(simulated::record(truth, 3));
     CHECK(fit.form == Form::integrating_plus_dead_time);
-    CHECK(std::abs(fit.gain - truth.gain) < 5.0 * fit.standard_errors.at("slope"));
-    CHECK(std::abs(fit.drift_per_s - truth.drift) < 5.0 * fit.standard_errors.at("drift"));
+    CHECK(std::abs(fit.gain - truth.gain) < 5.0 * fit.standard_error("slope").value());
+    CHECK(std::abs(fit.drift_per_s - truth.drift) < 5.0 * fit.standard_error("drift").value());
     CHECK(fit.advice() == Advice::tune);
 }
 
@@ -168,9 +168,9 @@ TEST_CASE("many samples and few give the same truth", "[invariant]") {
         const Truth truth{.samples = n};
         const FittedModel fit = identify(simulated::record(truth, 17), {.form = Form::first_order_plus_dead_time});
         INFO("samples " << n);
-        CHECK(std::abs(fit.gain - truth.gain) < 5.0 * fit.standard_errors.at("gain"));
-        CHECK(std::abs(fit.lags[0] - truth.lag) < 5.0 * fit.standard_errors.at("lag_1"));
-        CHECK(std::abs(fit.dead_time - truth.dead_time) < 5.0 * fit.standard_errors.at("dead_time"));
+        CHECK(std::abs(fit.gain - truth.gain) < 5.0 * fit.standard_error("gain").value());
+        CHECK(std::abs(fit.lags[0] - truth.lag) < 5.0 * fit.standard_error("lag_1").value());
+        CHECK(std::abs(fit.dead_time - truth.dead_time) < 5.0 * fit.standard_error("dead_time").value());
     }
 }
 

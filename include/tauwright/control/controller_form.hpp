@@ -124,10 +124,10 @@ inline void check(const ControllerForm& form) {
                                                                               {"form.filter_limits", &form.filter_limits}};
     for (const auto& field : fields) {
         const auto& [low, high] = *field.limits;
-        if (low) detail::require_finite(std::string(field.name) + ".low", *low);
-        if (high) detail::require_finite(std::string(field.name) + ".high", *high);
+        if (low) detail::require_finite(detail::joined({field.name, ".low"}), *low);
+        if (high) detail::require_finite(detail::joined({field.name, ".high"}), *high);
         if (low && high && !(*low <= *high))
-            detail::refuse(error_code::out_of_domain, std::string(field.name) + ".high", *high,
+            detail::refuse(error_code::out_of_domain, detail::joined({field.name, ".high"}), *high,
                            "give a high limit that is not below the low one");
     }
     if (form.fixed_filter) {

@@ -33,10 +33,10 @@ inline SeriesSettings series_from(const PidSettings& s) {
     const double discriminant = (Ti - Tf) * (Ti - Tf) - 4.0 * Ti * Td;
     if (!(discriminant >= 0.0) || !(Ti > Tf))
         throw Error(error_code::no_equivalent,
-                    "settings have integral_time " + text_of(Ti) + " s, derivative_time " + text_of(Td) +
-                        " s and filter_time " + text_of(Tf) +
-                        " s; a real series form needs (integral - filter)^2 >= 4 integral derivative and integral > filter: "
-                        "use an ideal or parallel form, or ask for settings with less derivative action");
+                    detail::joined({"settings have integral_time ", text_of(Ti), " s, derivative_time ", text_of(Td),
+                                    " s and filter_time ", text_of(Tf),
+                                    " s; a real series form needs (integral - filter)^2 >= 4 integral derivative and integral > "
+                                    "filter: use an ideal or parallel form, or ask for settings with less derivative action"}));
     const double large = 0.5 * (Ti + Tf + std::sqrt(discriminant));
     return {s.gain * large / Ti, large, Ti * (Td + Tf) / large, Tf};
 }
@@ -55,10 +55,10 @@ inline PidSettings ideal_from(const SeriesSettings& series) {
         ideal.derivative_time = Td - Tf;
     }
     if (ideal.derivative_time < 0.0 || (ideal.integral_time && !(*ideal.integral_time > 0.0)))
-        throw Error(error_code::no_equivalent, "derivative_time is " + text_of(Td) + " s with a filter_time of " +
-                                                   text_of(Tf) +
-                                                   " s; the filter outweighs the lead, so no PID has this response: "
-                                                   "give a filter shorter than the derivative time");
+        throw Error(error_code::no_equivalent,
+                    detail::joined({"derivative_time is ", text_of(Td), " s with a filter_time of ", text_of(Tf),
+                                    " s; the filter outweighs the lead, so no PID has this response: give a filter shorter "
+                                    "than the derivative time"}));
     return ideal;
 }
 
@@ -90,12 +90,12 @@ inline double shown(double value, const Field& field) {
     const double rounded = on_grid(value, field.resolution);
     if (value != 0.0 && rounded == 0.0)
         refuse(error_code::action_would_be_lost, field.name, value,
-               "the display's step of " + text_of(field.resolution) + " would round it to 0 and switch the action off");
+               joined({"the display's step of ", text_of(field.resolution), " would round it to 0 and switch the action off"}));
     const auto& [low, high] = *field.limits;
     if ((low && rounded < *low) || (high && rounded > *high))
         refuse(error_code::outside_field_limits, field.name, rounded,
-               "the field takes " + (low ? text_of(*low) : std::string("any")) + " to " +
-                   (high ? text_of(*high) : std::string("any")) + ": ask for a response that needs less");
+               joined({"the field takes ", low ? text_of(*low) : "any", " to ", high ? text_of(*high) : "any",
+                       ": ask for a response that needs less"}));
     return rounded;
 }
 
@@ -138,8 +138,8 @@ inline void enter_derivative(Entered& e, const ControllerForm& form, double time
     if (form.fixed_filter) {
         if (std::abs(number - *form.fixed_filter) > 1e-9 * std::max(std::abs(number), std::abs(*form.fixed_filter)))
             refuse(error_code::no_equivalent, "filter", number,
-                   "this controller's filter is fixed at " + text_of(*form.fixed_filter) +
-                       ": ask for settings with that filter");
+                   joined({"this controller's filter is fixed at ", text_of(*form.fixed_filter),
+                           ": ask for settings with that filter"}));
         return;
     }
     (form.filter_as == FilterAs::ratio ? e.filter_ratio : e.filter_time) = number == 0.0 ? 0.0 : shown(number, filter);
@@ -189,15 +189,15 @@ namespace detail {
 inline double entered_number(const std::optional<double>& number, const char* name) {
     if (!number)
         throw Error(error_code::missing_argument,
-                    std::string("entered.") + name + " is not given; this form needs it");
-    require_finite(std::string("entered.") + name, *number);
+                    joined({"entered.", name, " is not given; this form needs it"}));
+    require_finite(joined({"entered.", name}), *number);
     return *number;
 }
 
 inline double entered_magnitude(const std::optional<double>& number, const char* name, const ControllerForm& form) {
     const double value = entered_number(number, name);
     if (form.action_as == ActionAs::action_switch && value < 0.0)
-        refuse(error_code::out_of_domain, std::string("entered.") + name, value,
+        refuse(error_code::out_of_domain, joined({"entered.", name}), value,
                "this form's gains have no sign: set the action instead");
     return value;
 }
@@ -219,7 +219,7 @@ inline void refuse_foreign(const Entered& e, const ControllerForm& form) {
     for (const auto& field : fields)
         if (field.given && !field.fits)
             throw Error(error_code::conflicting_arguments,
-                        std::string("entered.") + field.name + " is given, but this form has no such field; leave it out");
+                        joined({"entered.", field.name, " is given, but this form has no such field; leave it out"}));
 }
 
 }  // namespace detail
@@ -251,7 +251,7 @@ inline PidSettings settings_from(const Entered& e, const ControllerForm& form) {
         const char* name = repeats ? "repeats" : "integral_time";
         const double entered = detail::entered_number(repeats ? e.repeats : e.integral_time, name);
         if (entered != form.integral_off) {
-            detail::require_positive(std::string("entered.") + name, entered);
+            detail::require_positive(detail::joined({"entered.", name}), entered);
             own.integral_time = repeats ? unit / entered : entered * unit;
         }
     }

@@ -41,7 +41,7 @@ public:
         above_ = above;
         if (largest == 0.0)
             throw Error(error_code::out_of_domain,
-                        "response is " + response_.text() + "; 1 - T is 0 everywhere, so the controller is infinite");
+                        detail::joined({"response is ", response_.text(), "; 1 - T is 0 everywhere, so the controller is infinite"}));
         order_at_origin_ = 0;
         while (series_[static_cast<std::size_t>(order_at_origin_)] == 0.0) ++order_at_origin_;
     }
@@ -74,7 +74,7 @@ public:
         return a.filter_ == b.filter_ && a.response_ == b.response_;
     }
 
-    std::string text() const { return "Q / (1 - T), Q = " + filter_.text() + ", T = " + response_.text(); }
+    std::string text() const { return detail::joined({"Q / (1 - T), Q = ", filter_.text(), ", T = ", response_.text()}); }
 
 private:
     // Beyond this many terms past the polynomials' degree the series of exp(-x), |x| < 1, is exact.

@@ -14,7 +14,7 @@ inline namespace v0 {
 inline void require(const PidSettings& settings, std::string_view name = "settings") {
     const PidSettingsProblem problem = check(settings);
     if (problem.code != error_code::ok)
-        detail::refuse(problem.code, std::string(name) + "." + problem.member, problem.value, problem.remedy);
+        detail::refuse(problem.code, detail::joined({name, ".", problem.member}), problem.value, problem.remedy);
 }
 
 /// C(s) of the settings in factors, both filters included; the numerator is factored in closed

@@ -24,7 +24,8 @@ struct PidSettings {
 
     /// Ki = Kc / Ti in 1/s, or the gain of integral action alone; 0 without integral action.
     double integral_gain_per_s() const noexcept {
-        return integral_time ? gain / *integral_time : integral_gain.value_or(0.0);
+        const double Ti = integral_time.value_or(0.0);
+        return Ti != 0.0 ? gain / Ti : integral_gain.value_or(0.0);
     }
 
     /// Response to the error at a complex s in rad/s.
@@ -69,11 +70,14 @@ inline PidSettingsProblem check(const PidSettings& s) noexcept {
     }
     if (s.integral_time && !(*s.integral_time > 0.0))
         return {out_of_domain, "integral_time", *s.integral_time, "give a time above 0, or none for no integral action"};
-    if (s.integral_gain && (s.integral_time || s.gain != 0.0) && *s.integral_gain != s.integral_gain_per_s())
+    if (s.integral_gain && s.gain != 0.0 && !(s.integral_time && *s.integral_gain == s.gain / *s.integral_time))
         return {conflicting_arguments, "integral_gain", *s.integral_gain,
                 "give integral_time with a gain, or integral_gain alone"};
     if (s.gain == 0.0 && s.integral_gain.value_or(0.0) == 0.0)
         return {out_of_domain, "gain", s.gain, "give a gain other than 0, or integral_gain for integral action alone"};
+    if (s.gain == 0.0 && s.integral_time)
+        return {conflicting_arguments, "integral_time", *s.integral_time,
+                "an integral time belongs to a gain other than 0; give integral_gain alone"};
     if (s.gain == 0.0 && s.derivative_time != 0.0)
         return {out_of_domain, "derivative_time", s.derivative_time, "derivative action needs a gain other than 0"};
     return {};

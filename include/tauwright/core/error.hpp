@@ -2,6 +2,8 @@
 #pragma once
 
 #include <charconv>
+#include <cstddef>
+#include <initializer_list>
 #include <stdexcept>
 #include <string>
 #include <string_view>
@@ -33,8 +35,19 @@ inline std::string text_of(double x) {
 
 namespace detail {
 
+/// The parts in one string. Chains of operator+ cost every includer far more to compile.
+inline std::string joined(std::initializer_list<std::string_view> parts) {
+    std::string out;
+    for (std::string_view part : parts) out.append(part);
+    return out;
+}
+
+inline std::string item_name(std::string_view list, std::size_t index) {
+    return joined({list, "[", text_of(static_cast<double>(index)), "]"});
+}
+
 [[noreturn]] inline void refuse(error_code code, std::string_view name, double value, std::string_view remedy) {
-    throw Error(code, std::string(name) + " is " + text_of(value) + "; " + std::string(remedy));
+    throw Error(code, joined({name, " is ", text_of(value), "; ", remedy}));
 }
 
 inline void require_finite(std::string_view name, double value) {

@@ -26,11 +26,11 @@ struct Range {
 
 /// Throws `not_finite` or `out_of_domain` unless low < high; `name` is the argument to blame.
 inline void check(const Range& range, std::string_view name) {
-    detail::require_finite(std::string(name) + ".low", range.low);
-    detail::require_finite(std::string(name) + ".high", range.high);
+    detail::require_finite(detail::joined({name, ".low"}), range.low);
+    detail::require_finite(detail::joined({name, ".high"}), range.high);
     if (!(range.low < range.high))
-        detail::refuse(error_code::out_of_domain, std::string(name) + ".high", range.high,
-                       "give a high end above the low end " + text_of(range.low));
+        detail::refuse(error_code::out_of_domain, detail::joined({name, ".high"}), range.high,
+                       detail::joined({"give a high end above the low end ", text_of(range.low)}));
 }
 
 }  // namespace v0

@@ -90,9 +90,9 @@ inline TwoStates two_states(const TransferFunction& process) {
     const int states = process.order();
     if (!plain || states > 2 || f.integrators > 1 || (f.lag_pairs.size() == 1 && states != 2))
         throw Error(error_code::unsupported_form,
-                    "process is " + process.text() +
+                    joined({"process is ", process.text(),
                         "; a process block takes up to two lags, one oscillatory pair, or an integrator with at most "
-                        "one lag, without leads: reduce the process to one of these");
+                        "one lag, without leads: reduce the process to one of these"}));
     TwoStates system;
     if (!f.lag_pairs.empty()) {
         const double T = f.lag_pairs[0].time_constant, z = f.lag_pairs[0].damping;

@@ -66,8 +66,6 @@ struct Finding {
     double value = 0.0;         ///< the number that shows it; the message says its meaning
     std::size_t first = 0;      ///< samples first .. last (both included) show it
     std::size_t last = 0;
-
-    friend bool operator==(const Finding&, const Finding&) = default;
 };
 
 /// The gravest advice among the findings; `tune` where there are none.

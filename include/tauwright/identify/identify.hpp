@@ -1,9 +1,9 @@
 // A process model from a plant record, with standard errors and findings. Compiled.
 #pragma once
 
-#include <map>
 #include <optional>
 #include <string>
+#include <string_view>
 #include <vector>
 
 #include "tauwright/identify/finding.hpp"
@@ -52,8 +52,6 @@ struct Move {
     double size = 0.0;             ///< in output units
     double gain = 0.0;             ///< gain or slope from this move alone
     double standard_error = 0.0;
-
-    friend bool operator==(const Move&, const Move&) = default;
 };
 
 /// A fit: process value = offset + drift + G(s) acting on (output - first output).
@@ -67,10 +65,9 @@ struct FittedModel {
     double offset = 0.0;                           ///< ... and the process value at rest there
     double drift_per_s = 0.0;                      ///< for an integrating form: its slope at the first output
     double drift_per_s2 = 0.0;
-    /// One standard deviation of each parameter fitted: gain or slope, lag_1, dead_time, offset, drift.
-    std::map<std::string, double> standard_errors = {};
-    std::vector<std::string> parameter_names = {}; ///< order of `covariance`
-    std::vector<double> covariance = {};           ///< row by row
+    /// The parameters fitted, of: gain or slope, lag_1, dead_time, offset, drift, curvature.
+    std::vector<std::string> parameter_names = {};
+    std::vector<double> covariance = {};           ///< of the parameters in that order, row by row
     double sum_of_squares = 0.0;                   ///< of the residuals at the samples used
     double residual_rms = 0.0;                     ///< root of sum_of_squares / samples_used
     double noise = 0.0;                            ///< root of sum_of_squares / degrees of freedom
@@ -80,6 +77,9 @@ struct FittedModel {
     std::vector<Finding> findings = {};
     std::string form_reason = {};                  ///< why this form, in words
     Advice advice() const noexcept { return advice_of(findings); }
+    /// One standard deviation of a parameter fitted, by name; infinite where the record cannot tell
+    /// parameters apart, empty where it was not fitted.
+    std::optional<double> standard_error(std::string_view parameter) const noexcept;
 };
 
 /// Separable least squares on the samples that are good: offset and gain (and drift) are linear, lag

@@ -84,12 +84,13 @@ inline std::vector<double> step_response(const TransferFunction& process, std::s
         f.integrators == 0 && ((f.lag_pairs.empty() && f.lags.size() <= 2) || (f.lag_pairs.size() == 1 && f.lags.empty()));
     const bool integrating = f.integrators == 1 && f.lag_pairs.empty() && f.lags.size() <= 1;
     if (!plain || !(self_regulating || integrating))
-        throw Error(error_code::unsupported_form, "process is " + process.text() +
-                                                      "; step_response knows up to two lags, one oscillatory pair, or an "
-                                                      "integrator with at most one lag");
+        throw Error(error_code::unsupported_form,
+                    detail::joined({"process is ", process.text(),
+                                    "; step_response knows up to two lags, one oscillatory pair, or an integrator with at "
+                                    "most one lag"}));
     std::vector<double> response(time_s.size(), 0.0);
     for (std::size_t i = 0; i < time_s.size(); ++i) {
-        detail::require_finite("time_s[" + std::to_string(i) + "]", time_s[i]);
+        detail::require_finite(detail::item_name("time_s", i), time_s[i]);
         const double t = time_s[i] - f.dead_time;
         if (t < 0.0) continue;
         double y = 1.0;

@@ -160,12 +160,12 @@ inline int right_half_plane_count(const std::vector<double>& real, const std::ve
 template <class Factor>
 inline void check_factors(const char* name, const std::vector<Factor>& list) {
     for (std::size_t i = 0; i < list.size(); ++i) {
-        const std::string item = std::string(name) + "[" + std::to_string(i) + "]";
+        const std::string item = item_name(name, i);
         if constexpr (std::is_same_v<Factor, double>) {
             require_not_zero(item, list[i]);
         } else {
-            require_positive(item + ".time_constant", list[i].time_constant);
-            require_finite(item + ".damping", list[i].damping);
+            require_positive(joined({item, ".time_constant"}), list[i].time_constant);
+            require_finite(joined({item, ".damping"}), list[i].damping);
         }
     }
 }
@@ -312,22 +312,15 @@ namespace detail {
 
 inline void append_side(std::string& out, int at_origin, const std::vector<double>& real,
                         const std::vector<QuadraticFactor>& pairs) {
-    const auto separate = [&] {
-        if (!out.empty() && out.back() != '(') out += ' ';
+    const auto factor = [&](std::initializer_list<std::string_view> parts) {
+        if (!out.empty()) out.append(" ");
+        out.append(joined(parts));
     };
-    if (at_origin > 0) {
-        separate();
-        out += at_origin == 1 ? "s" : "s^" + std::to_string(at_origin);
-    }
-    for (double T : real) {
-        separate();
-        out += "(" + text_of(T) + " s + 1)";
-    }
-    for (const auto& f : pairs) {
-        separate();
-        out += "(" + text_of(f.time_constant * f.time_constant) + " s^2 + " +
-               text_of(2.0 * f.damping * f.time_constant) + " s + 1)";
-    }
+    if (at_origin > 0) factor({"s", at_origin > 1 ? "^" : "", at_origin > 1 ? text_of(at_origin) : ""});
+    for (double T : real) factor({"(", text_of(T), " s + 1)"});
+    for (const auto& f : pairs)
+        factor({"(", text_of(f.time_constant * f.time_constant), " s^2 + ", text_of(2.0 * f.damping * f.time_constant),
+                " s + 1)"});
 }
 
 }  // namespace detail
@@ -335,12 +328,12 @@ inline void append_side(std::string& out, int at_origin, const std::vector<doubl
 inline std::string TransferFunction::text() const {
     std::string out = text_of(factors_.gain);
     detail::append_side(out, factors_.zeros_at_origin, factors_.leads, factors_.lead_pairs);
-    if (factors_.dead_time != 0.0) out += " exp(-" + text_of(factors_.dead_time) + " s)";
+    if (factors_.dead_time != 0.0) out.append(detail::joined({" exp(-", text_of(factors_.dead_time), " s)"}));
     std::string below;
     detail::append_side(below, factors_.integrators, factors_.lags, factors_.lag_pairs);
     if (below.empty()) return out;
-    const bool several = order() > 1 && factors_.integrators + static_cast<int>(factors_.lags.size() + factors_.lag_pairs.size()) > 1;
-    return out + " / " + (several ? "(" + below + ")" : below);
+    const std::size_t written = (factors_.integrators > 0 ? 1u : 0u) + factors_.lags.size() + factors_.lag_pairs.size();
+    return detail::joined({out, " / ", written > 1 ? "(" : "", below, written > 1 ? ")" : ""});
 }
 
 }  // namespace v0

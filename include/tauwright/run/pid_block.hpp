@@ -31,7 +31,7 @@ enum class Mode : std::int32_t { manual = 0, automatic = 1 };
 
 /// What the last step had to say; bits of `PidBlock::flags`.
 enum PidFlag : std::uint32_t {
-    flag_bad_input = 1u,      ///< set point or process value was NaN or infinite; the output was held
+    flag_bad_input = 1u,      ///< set point or process value was no usable number; the output was held
     flag_limited_low = 2u,    ///< the output is at its low limit
     flag_limited_high = 4u,   ///< the output is at its high limit
     flag_manual = 8u,         ///< the output is the manual one
@@ -57,10 +57,10 @@ public:
         take_over_ = true;
     }
 
-    /// One scan. Never fails: a set point or process value that is not finite holds the output, sets
-    /// `flag_bad_input`, and the next good scan takes over from the held output without a bump.
+    /// One scan. Never fails: a set point or process value that is not finite, or beyond 1e150 so
+    /// that sums could overflow, holds the output, sets `flag_bad_input`, and the next good scan takes over from the held output without a bump.
     double step(double setpoint, double process_value) noexcept {
-        if (!is_finite(setpoint) || !is_finite(process_value)) {
+        if (!usable(setpoint) || !usable(process_value)) {
             if (mode_ == Mode::manual) output_ = manual_output_;
             flags_ |= flag_bad_input;
             take_over_ = true;
@@ -117,6 +117,7 @@ public:
     const PidCoefficients& coefficients() const noexcept { return coefficients_; }
 
 private:
+    static bool usable(double x) noexcept { return is_finite(x) && x < 1e150 && x > -1e150; }
     // Numbers this small only cost time: arithmetic on denormals is many times slower.
     static double flushed(double x) noexcept { return (x < 1e-200 && x > -1e-200) ? 0.0 : x; }
     static double smoothed(double state, double input, double share) noexcept {

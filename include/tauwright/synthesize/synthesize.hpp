@@ -64,8 +64,6 @@ struct Obstacle {
     std::string message = {};  ///< what and why
     double value = 0.0;        ///< the number that shows it
     std::string repair = {};   ///< what to ask for instead
-
-    friend bool operator==(const Obstacle&, const Obstacle&) = default;
 };
 
 /// The answer. A value in every case: what cannot be built is said in `obstacles`.

@@ -21,8 +21,6 @@ struct SheetController {
     std::optional<Entered> entered = {};      ///< in the controller's form
     Robustness margins = {};                  ///< with scan time and every filter
     std::optional<Figures> figures = {};      ///< of the trend under the duty; empty without a scan time
-
-    friend bool operator==(const SheetController&, const SheetController&) = default;
 };
 
 /// How fast the loop was asked to be, and why.
@@ -32,8 +30,6 @@ struct SpeedChoice {
     double effective_dead_time_s = 0.0;  ///< dead time + half a scan + measurement filter
     double half_scan_s = 0.0;
     double measurement_filter_time_s = 0.0;
-
-    friend bool operator==(const SpeedChoice&, const SpeedChoice&) = default;
 };
 
 /// The sheet. A value; texts and JSON are made from it alone.
@@ -80,8 +76,6 @@ struct SheetDifference {
     std::string path = {};
     std::string earlier = {};
     std::string later = {};
-
-    friend bool operator==(const SheetDifference&, const SheetDifference&) = default;
 };
 
 /// Everything that differs, in the order of the document.
