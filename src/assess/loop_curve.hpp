@@ -10,11 +10,18 @@ namespace tauwright {
 inline namespace v0 {
 namespace detail {
 
-/// L(jw) and its logarithmic derivative at the middle of an interval.
+/// L(jw) and the first two derivatives of its logarithm.
 struct CurvePoint {
     double w = 0.0;
     std::complex<double> L;
     std::complex<double> slope;  ///< d log L / dw
+    std::complex<double> bend;   ///< d^2 log L / dw^2
+};
+
+/// Bounds over an interval.
+struct CurveBounds {
+    double bend = 0.0;   ///< on |d^2 log L / dw^2|
+    double twist = 0.0;  ///< on |d^3 log L / dw^3|
 };
 
 class LoopCurve {
@@ -23,8 +30,8 @@ public:
 
     CurvePoint at(double w) const noexcept;
     std::complex<double> value(double w) const noexcept { return loop_({0.0, w}); }
-    /// Bound on |d^2 log L / dw^2| over [low, high]; infinite where a root lies on the interval.
-    double bend(double low, double high) const noexcept;
+    /// Bounds over [low, high]; infinite where a root lies on the interval.
+    CurveBounds bounds(double low, double high) const noexcept;
     /// Bound on |L(jw)| for all frequencies from w on; infinite below the largest root.
     double tail(double w) const noexcept;
 
@@ -37,13 +44,18 @@ public:
     double lowest() const noexcept { return lowest_; }
     double largest_root() const noexcept { return largest_root_; }
     /// The phase is the same at every frequency: gain and integrators alone.
-    bool constant_phase() const noexcept { return zeros_.empty() && poles_.empty() && loop_.dead_time() == 0.0; }
+    bool constant_phase() const noexcept { return roots_.empty() && loop_.dead_time() == 0.0; }
     bool pole_on_axis() const noexcept { return pole_on_axis_; }
 
 private:
     TransferFunction loop_;
-    std::vector<std::complex<double>> zeros_, poles_;  // without those at the origin
+    // Zeros (sign 1) and poles (sign -1) without those at the origin.
+    struct Root {
+        double re, im, sign;
+    };
+    std::vector<Root> roots_;
     int net_integrators_ = 0;
+    double leading_ = 0.0;  // L = leading (jw)^-net * product (jw - zeros) / product (jw - poles) * exp(-jw dead time)
     double lowest_ = 0.0, largest_root_ = 0.0;
     bool pole_on_axis_ = false;
 };

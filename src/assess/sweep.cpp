@@ -132,21 +132,23 @@ private:
         }
         const double middle = 0.5 * (low + high), h = 0.5 * (high - low);
         const CurvePoint point = curve_.at(middle);
-        const double bend = curve_.bend(low, high);
+        const CurveBounds bounds = curve_.bounds(low, high);
+        const double bend = bounds.bend;
         const double gain_change = std::abs(point.slope.real()) * h + 0.5 * bend * h * h;
         const double phase_change = std::abs(point.slope.imag()) * h + 0.5 * bend * h * h;
         look(point.L, middle);
         if (todo.gain) todo.gain = !settle_gain(low, high, point, bend * h, gain_change);
         if (todo.phase) todo.phase = !settle_phase(low, high, point, bend * h, phase_change);
-        if (todo.near_L && settle_near(point.L, point.slope, bend, h, gain_change, result_.to_minus_one)) {
-            // Over this piece 1 + L stays in a convex set without 0, so its turn is less than half a circle.
+        const Piece piece{h, bounds, gain_change};
+        if (todo.near_L && settle_near({point.L, point.slope, point.bend}, piece, result_.to_minus_one)) {
+            // Over this piece 1 + L turns by less than half a circle.
             const std::complex<double> next = 1.0 + curve_.value(high);
             result_.winding += std::arg(next / last_);
             last_ = next;
             todo.near_L = false;
         }
         if (todo.near_inverse)
-            todo.near_inverse = !settle_near(1.0 / point.L, -point.slope, bend, h, gain_change, result_.inverse_to_minus_one);
+            todo.near_inverse = !settle_near({1.0 / point.L, -point.slope, -point.bend}, piece, result_.inverse_to_minus_one);
         if (!todo.any()) return;
         if (depth > 60 || middle <= low || middle >= high) {
             // A root on the axis or a curve through -1: what is here has been looked at.
@@ -187,21 +189,46 @@ private:
     }
     static double below_one(double x) noexcept { return x < 1.0 ? x : 0.0; }
 
-    // Is |1 + X| nowhere on the piece noticeably below the smallest found? X = L or 1/L.
-    bool settle_near(std::complex<double> X, std::complex<double> slope, double bend, double h, double gain_change,
-                     const Closest& closest) const noexcept {
-        if (!(gain_change < 50.0)) return false;
-        const double size = std::abs(X);
-        const double largest = size * std::exp(gain_change), smallest = size * std::exp(-gain_change);
+    // X = L or 1/L in the middle of a piece, with the derivatives of its logarithm.
+    struct Middle {
+        std::complex<double> X, slope, bend;
+    };
+    struct Piece {
+        double h;  // half its width
+        CurveBounds bounds;
+        double gain_change;
+    };
+
+    // Is |1 + X| nowhere on the piece noticeably below the smallest found, and does it turn by less than
+    // half a circle? From the Taylor series of q = |1 + X|^2 with a bound on its third derivative.
+    static bool settle_near(const Middle& m, const Piece& p, const Closest& closest) noexcept {
+        if (!(p.gain_change < 50.0) || !(closest.distance > 0.0)) return false;
+        const double h = p.h, size = std::abs(m.X), growth = std::exp(p.gain_change);
         const double enough = closest.distance * (1.0 - closed_to);
-        if (smallest - 1.0 > enough || 1.0 - largest > enough) return closest.distance > 0.0;
-        const double steep = std::abs(slope) + bend * h;
-        const double rest = 0.5 * largest * (steep * steep + bend) * h * h;
-        // Distance of 0 from the segment F - D .. F + D, less what the segment leaves out.
-        const std::complex<double> F = 1.0 + X, D = X * slope * h;
-        const double DD = std::norm(D);
-        const double along = DD > 0.0 ? std::clamp(-(F.real() * D.real() + F.imag() * D.imag()) / DD, -1.0, 1.0) : 0.0;
-        return std::abs(F + along * D) - rest > enough && enough > 0.0;
+        if (size / growth - 1.0 > enough && size > growth) {  // stays outside the circle around 0 of that radius ...
+            if (turn_below_half(size * growth, size / growth - 1.0, m, p)) return true;
+        } else if (1.0 - size * growth > enough) {            // ... or inside the one that keeps away from -1
+            return true;
+        }
+        const double steep = std::abs(m.slope) + p.bounds.bend * h;
+        const double X0 = size * growth, X1 = X0 * steep, X2 = X0 * (steep * steep + p.bounds.bend);
+        const double X3 = X0 * (steep * (steep * steep + 3.0 * p.bounds.bend) + p.bounds.twist);
+        const double F0 = std::min(1.0 + X0, std::abs(1.0 + m.X) + X1 * h);
+        const double third = 2.0 * (3.0 * X1 * X2 + F0 * X3);
+        const std::complex<double> dX = m.X * m.slope, ddX = m.X * (m.slope * m.slope + m.bend);
+        const double f_re = 1.0 + m.X.real(), f_im = m.X.imag();
+        const double q0 = f_re * f_re + f_im * f_im;
+        const double q1 = 2.0 * (f_re * dX.real() + f_im * dX.imag());
+        const double q2 = 2.0 * (std::norm(dX) + f_re * ddX.real() + f_im * ddX.imag());
+        double least = q0 - std::abs(q1) * h + 0.5 * q2 * h * h;
+        if (q2 > 0.0 && std::abs(q1) < q2 * h) least = q0 - 0.5 * q1 * q1 / q2;
+        least -= third * h * h * h / 6.0;
+        return least > enough * enough && turn_below_half(X0, std::sqrt(least), m, p);
+    }
+
+    // |d arg(1 + X)| <= |X'| / |1 + X| all along the piece.
+    static bool turn_below_half(double largest, double nearest, const Middle& m, const Piece& p) noexcept {
+        return 2.0 * p.h * largest * (std::abs(m.slope) + p.bounds.bend * p.h) < 3.0 * nearest;
     }
 
     void finish() {
