@@ -29,7 +29,7 @@ static void trend_of_600_scans(benchmark::State& state) {
     const TransferFunction process = first_order_plus_dead_time(2.0, 10.0, 3.0);
     const PidSettings settings{.gain = 0.8, .integral_time = 10.0};
     for (auto _ : state)
-        benchmark::DoNotOptimize(simulate(process, settings, {.setpoint_step = 2.0, .scan_time_s = 0.5}, 300.0));
+        benchmark::DoNotOptimize(simulate(process, settings, {.setpoint_step = 2.0, .scan_time = 0.5}, 300.0));
 }
 BENCHMARK(trend_of_600_scans)->Unit(benchmark::kMicrosecond);
 

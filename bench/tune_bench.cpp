@@ -11,7 +11,7 @@ static void arrays_to_sheet(benchmark::State& state) {
     columns.output_range = Range{};
     columns.process_value_range = Range{.low = 0.0, .high = 120.0, .unit = "degC"};
     const TuningRequest request{.form = ControllerForm{.gain_resolution = 0.01, .integral_resolution = 0.1},
-                                .duty = Duty{.setpoint_step = 4.0, .scan_time_s = 0.5},
+                                .duty = Duty{.setpoint_step = 4.0, .scan_time = 0.5},
                                 .as_found = Entered{.gain = 1.0, .integral_time = 20.0}};
     for (auto _ : state) {
         const Record record(columns);

@@ -32,13 +32,13 @@ static void print_findings(const tauw_fit* fit, size_t count) {
 }
 
 /* Ten scans after a set-point step from 50 % to 54 %; the last output. */
-static double run_blocks(const tauw_pid_settings* settings, const tauw_model* process, double scan_time_s) {
+static double run_blocks(const tauw_pid_settings* settings, const tauw_model* process, double scan_time) {
     tauw_pid_coefficients pid_coefficients;
     tauw_process_coefficients process_coefficients;
     tauw_pid_coefficients_defaults(&pid_coefficients, sizeof pid_coefficients);
     tauw_process_coefficients_defaults(&process_coefficients, sizeof process_coefficients);
-    must(tauw_discretize_pid(settings, scan_time_s, &pid_coefficients, &error));
-    must(tauw_discretize_process(process, scan_time_s, &process_coefficients, &error));
+    must(tauw_discretize_pid(settings, scan_time, &pid_coefficients, &error));
+    must(tauw_discretize_process(process, scan_time, &process_coefficients, &error));
 
     /* All memory of the blocks is ours: here from malloc, in firmware as well static. */
     size_t length = 0;
@@ -67,13 +67,13 @@ static double run_blocks(const tauw_pid_settings* settings, const tauw_model* pr
 }
 
 /* The whole walk in one call: settings with a scan time, or the reasons why there are none. */
-static void print_sheet(const tauw_record* record, double scan_time_s) {
+static void print_sheet(const tauw_record* record, double scan_time) {
     tauw_duty duty;
     tauw_tuning_request request;
     tauw_duty_defaults(&duty, sizeof duty);
     tauw_tuning_request_defaults(&request, sizeof request);
-    duty.has_scan_time_s = 1;
-    duty.scan_time_s = scan_time_s;
+    duty.has_scan_time = 1;
+    duty.scan_time = scan_time;
     request.duty = &duty;
     tauw_sheet* sheet = NULL;
     must(tauw_tune(record, &request, &sheet, &error));
@@ -90,14 +90,14 @@ static void print_sheet(const tauw_record* record, double scan_time_s) {
         tauw_pid_settings settings;
         tauw_pid_settings_defaults(&settings, sizeof settings);
         must(tauw_sheet_settings(sheet, TAUW_SHEET_PROPOSED, &settings, &error));
-        printf("sheet: closed-loop time constant %.4g s, gain %.4g, integral time %.4g s\n", summary.time_constant_s,
+        printf("sheet: closed-loop time constant %.4g s, gain %.4g, integral time %.4g s\n", summary.time_constant,
                settings.gain, settings.integral_time);
     }
     must(tauw_sheet_destroy(&sheet));
 }
 
 int main(int argc, char** argv) {
-    const double scan_time_s = 1.0;
+    const double scan_time = 1.0;
     tauw_error_defaults(&error, sizeof error);
 
     tauw_record* record = NULL;
@@ -143,8 +143,8 @@ int main(int argc, char** argv) {
     tauw_robustness margins;
     tauw_robustness_options_defaults(&options, sizeof options);
     tauw_robustness_defaults(&margins, sizeof margins);
-    options.has_scan_time_s = 1;
-    options.scan_time_s = scan_time_s;
+    options.has_scan_time = 1;
+    options.scan_time = scan_time;
     must(tauw_robustness_of(process, &settings, &options, &margins, &error));
 
     char model[256];
@@ -153,8 +153,8 @@ int main(int argc, char** argv) {
     printf("settings: gain %.4g, integral time %.4g s\n", settings.gain, settings.integral_time);
     printf("margins: the loop is %s, gain margin %.3g, phase margin %.3g deg\n", tauw_verdict_name(margins.verdict),
            margins.gain_margin, margins.phase_margin_deg);
-    const double output = run_blocks(&settings, process, scan_time_s);
-    print_sheet(record, scan_time_s);
+    const double output = run_blocks(&settings, process, scan_time);
+    print_sheet(record, scan_time);
 
     printf("gain %.17g\nlag_1 %.17g\ndead_time %.17g\n", fitted.gain, lag, fitted.dead_time);
     printf("controller_gain %.17g\nintegral_time_s %.17g\n", settings.gain, settings.integral_time);

@@ -34,8 +34,8 @@ int32_t tauw_robustness_of(const tauw_model* process, const tauw_pid_settings* s
         tauwright::RobustnessOptions with;
         if (options != nullptr) {
             const tauw_robustness_options c = shell::read(options, "options");
-            with = {.scan_time_s = shell::optional(c.has_scan_time_s, c.scan_time_s, "options.scan_time_s"),
-                    .extra_delay_s = c.extra_delay_s};
+            with = {.scan_time = shell::optional(c.has_scan_time, c.scan_time, "options.scan_time"),
+                    .extra_delay = c.extra_delay};
         }
         result.give(shell::from(tauwright::robustness(g, shell::settings(settings), with)));
     });

@@ -97,10 +97,10 @@ Duty duty(const tauw_duty* source, const char* name) {
     const std::string at = std::string(name) + ".";
     return {.setpoint_step = c.setpoint_step,
             .load_step = c.load_step,
-            .load_time_s = c.load_time_s,
+            .load_time = c.load_time,
             .noise = c.noise,
             .seed = c.seed,
-            .scan_time_s = optional(c.has_scan_time_s, c.scan_time_s, at + "scan_time_s"),
+            .scan_time = optional(c.has_scan_time, c.scan_time, at + "scan_time_s"),
             .output_low = c.output_low,
             .output_high = c.output_high,
             .rest_output = optional(c.has_rest_output, c.rest_output, at + "rest_output"),

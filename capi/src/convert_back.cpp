@@ -54,7 +54,7 @@ tauw_robustness from(const Robustness& r) noexcept {
     set(r.gain_margin, c.has_gain_margin, c.gain_margin);
     set(r.gain_reduction_margin, c.has_gain_reduction_margin, c.gain_reduction_margin);
     set(r.phase_margin_deg, c.has_phase_margin_deg, c.phase_margin_deg);
-    set(r.delay_margin_s, c.has_delay_margin_s, c.delay_margin_s);
+    set(r.delay_margin, c.has_delay_margin, c.delay_margin);
     set(r.max_sensitivity, c.has_max_sensitivity, c.max_sensitivity);
     set(r.max_sensitivity_frequency, c.has_max_sensitivity_frequency, c.max_sensitivity_frequency);
     set(r.max_complementary_sensitivity, c.has_max_complementary_sensitivity, c.max_complementary_sensitivity);
@@ -66,7 +66,7 @@ tauw_robustness from(const Robustness& r) noexcept {
 tauw_figures from(const Figures& figures) noexcept {
     tauw_figures c = blank<tauw_figures>();
     set(figures.overshoot_percent, c.has_overshoot_percent, c.overshoot_percent);
-    set(figures.settling_time_s, c.has_settling_time_s, c.settling_time_s);
+    set(figures.settling_time, c.has_settling_time, c.settling_time);
     set(figures.peak_load_error, c.has_peak_load_error, c.peak_load_error);
     c.integrated_absolute_error = figures.integrated_absolute_error;
     c.valve_travel = figures.valve_travel;

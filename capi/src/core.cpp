@@ -38,7 +38,6 @@ constexpr std::array codes_in_c = {
     Code{TAUW_ERROR_ACTION_WOULD_BE_LOST, "action_would_be_lost"},
     Code{TAUW_ERROR_OUTSIDE_FIELD_LIMITS, "outside_field_limits"},
     Code{TAUW_ERROR_SAFETY_FUNCTION, "safety_function"},
-    Code{TAUW_ERROR_NOT_CONVERGED, "not_converged"},
     Code{TAUW_ERROR_SCHEMA_UNSUPPORTED, "schema_unsupported"},
     Code{TAUW_ERROR_OUT_OF_MEMORY, "out_of_memory"},
     Code{TAUW_ERROR_INTERNAL, "internal"},

@@ -29,6 +29,7 @@ TAUW_SAME(TAUW_FINDING_OUTPUT_CLIPPED, FindingCode::output_clipped);
 TAUW_SAME(TAUW_FINDING_BAD_SAMPLES_LEFT_OUT, FindingCode::bad_samples_left_out);
 TAUW_SAME(TAUW_FINDING_OUTPUT_MOVED_BY_CONTROLLER, FindingCode::output_moved_by_controller);
 TAUW_SAME(TAUW_FINDING_GAIN_DIFFERS, FindingCode::gain_differs);
+TAUW_SAME(TAUW_FINDING_MODEL_DOES_NOT_FIT, FindingCode::model_does_not_fit);
 
 int32_t tauw_identify_options_defaults(tauw_identify_options* options, uint32_t size) {
     return shell::fill_defaults(options, size);
@@ -71,6 +72,12 @@ int32_t tauw_fit_summarize(const tauw_fit* fit, tauw_fit_summary* summary, tauw_
         c.residual_rms = f.residual_rms;
         c.noise = f.noise;
         c.r_squared = f.r_squared;
+        c.residual_correlation = f.residual_correlation;
+        c.response_to_noise = f.response_to_noise;
+        c.tested_output_low = f.tested_output.low;
+        c.tested_output_high = f.tested_output.high;
+        c.tested_process_value_low = f.tested_process_value.low;
+        c.tested_process_value_high = f.tested_process_value.high;
         c.samples_used = f.samples_used;
         c.lag_count = f.lags.size();
         c.parameter_count = f.parameter_names.size();

@@ -77,10 +77,10 @@ int32_t tauw_sheet_summarize(const tauw_sheet* sheet, tauw_sheet_summary* summar
         c.has_proposed_entered = s.proposed && s.proposed->entered ? 1 : 0;
         c.has_proposed_figures = s.proposed && s.proposed->figures ? 1 : 0;
         if (s.speed) {
-            c.time_constant_s = s.speed->time_constant_s;
-            c.effective_dead_time_s = s.speed->effective_dead_time_s;
-            c.half_scan_s = s.speed->half_scan_s;
-            c.measurement_filter_time_s = s.speed->measurement_filter_time_s;
+            c.time_constant = s.speed->time_constant;
+            c.effective_dead_time = s.speed->effective_dead_time;
+            c.half_scan = s.speed->half_scan;
+            c.measurement_filter_time = s.speed->measurement_filter_time;
         }
         c.finding_count = s.fit.findings.size();
         c.obstacle_count = s.obstacles.size();

@@ -84,8 +84,9 @@ std::optional<int> poles_by_winding(const LoopCurve& curve, const SweepResult& f
 }
 
 void decide(const LoopCurve& curve, const SweepResult& found, Robustness& r) {
-    if (curve.relative_degree() < 0 || (curve.at_infinity() >= 1.0 && curve.loop().dead_time() > 0.0)) {
-        // Neutral or advanced type: infinitely many poles to the right, or nothing that can be built.
+    if (curve.relative_degree() < 0 && curve.loop().dead_time() == 0.0) return;  // nothing that can be built
+    if (curve.at_infinity() >= 1.0 && curve.loop().dead_time() > 0.0) {
+        // Neutral or advanced type: infinitely many poles to the right.
         r.verdict = Verdict::unstable;
         r.stable = false;
         return;
@@ -120,7 +121,8 @@ void take_margins(const LoopCurve& curve, const SweepResult& found, Robustness& 
         if (factor > 1.0) above = std::min(above, factor);
         if (factor < 1.0) below = std::max(below, factor);
     };
-    for (const auto& c : r.phase_crossovers) take(c.gain_factor);
+    if (found.largest_below_one > 0.0) take(1.0 / found.largest_below_one);
+    if (found.smallest_above_one > 0.0) take(1.0 / found.smallest_above_one);
     // The ends of the curve cross the negative axis too.
     if (curve.net_integrators() == 0 && curve.loop().gain() < 0.0) take(-1.0 / curve.loop().gain());
     if (curve.relative_degree() == 0 && curve.loop().dead_time() > 0.0) take(1.0 / curve.at_infinity());
@@ -128,12 +130,12 @@ void take_margins(const LoopCurve& curve, const SweepResult& found, Robustness& 
         take(-1.0 / curve.loop().leading_coefficient());
     for (const auto& c : r.gain_crossovers) {
         phase = std::min(phase, c.phase_margin_deg);
-        delay = std::min(delay, c.delay_margin_s);
+        delay = std::min(delay, c.delay_margin);
     }
     r.gain_margin = above;
     r.gain_reduction_margin = below;
     r.phase_margin_deg = phase;
-    r.delay_margin_s = delay;
+    r.delay_margin = delay;
     r.max_sensitivity = 1.0 / found.to_minus_one.distance;
     r.max_sensitivity_frequency = found.to_minus_one.frequency;
     r.max_complementary_sensitivity = 1.0 / found.inverse_to_minus_one.distance;
@@ -157,10 +159,17 @@ Robustness robustness(const TransferFunction& open_loop) {
 }
 
 Robustness robustness(const TransferFunction& process, const PidSettings& settings, const RobustnessOptions& options) {
-    require_not_negative("extra_delay", options.extra_delay_s);
-    if (options.scan_time_s) require_positive("scan_time", *options.scan_time_s);
+    require_not_negative("extra_delay", options.extra_delay);
+    if (options.scan_time) require_positive("scan_time", *options.scan_time);
     const TransferFunction loop = process * transfer_function(settings);
-    return robustness(loop.with_dead_time(loop.dead_time() + options.extra_delay_s + 0.5 * options.scan_time_s.value_or(0.0)));
+    if (loop.integrators() > 0 && loop.zeros_at_origin() > 0) {
+        // A zero at rest against an integrator hides a pole at 0: one of the two signals ramps away.
+        Robustness hidden;
+        hidden.verdict = Verdict::marginal;
+        hidden.stable = false;
+        return hidden;
+    }
+    return robustness(loop.with_dead_time(loop.dead_time() + options.extra_delay + 0.5 * options.scan_time.value_or(0.0)));
 }
 
 }  // namespace v0

@@ -16,8 +16,8 @@ void check(const Duty& duty) {
         {"duty.output_low", duty.output_low},       {"duty.output_high", duty.output_high}};
     for (const auto& number : numbers) detail::require_finite(number.name, number.value);
     detail::require_not_negative("duty.noise", duty.noise);
-    detail::require_not_negative("duty.load_time_s", duty.load_time_s);
-    if (duty.scan_time_s) detail::require_positive("duty.scan_time", *duty.scan_time_s);
+    detail::require_not_negative("duty.load_time", duty.load_time);
+    if (duty.scan_time) detail::require_positive("duty.scan_time", *duty.scan_time);
     if (!(duty.output_low < duty.output_high))
         detail::refuse(error_code::out_of_domain, "duty.output_high", duty.output_high,
                        "give a high limit above the low one, " + text_of(duty.output_low));
@@ -29,9 +29,9 @@ void check(const Duty& duty) {
 Trend simulate(const TransferFunction& process, const PidSettings& settings, const Duty& duty, double horizon_s) {
     check(duty);
     detail::require_positive("horizon", horizon_s);
-    if (!duty.scan_time_s)
+    if (!duty.scan_time)
         throw Error(error_code::missing_argument, "duty.scan_time is not given; the simulated controller needs one");
-    const double h = *duty.scan_time_s, scans = std::floor(horizon_s / h * (1.0 + 1e-12));
+    const double h = *duty.scan_time, scans = std::floor(horizon_s / h * (1.0 + 1e-12));
     if (!(scans >= 2.0) || !(scans <= 1e7))
         detail::refuse(error_code::out_of_domain, "horizon", horizon_s,
                        "give from two to ten million scans of " + text_of(h) + " s");
@@ -58,7 +58,7 @@ Trend simulate(const TransferFunction& process, const PidSettings& settings, con
         trend.output.push_back(output);
         trend.limited |= (controller.flags() & (run::flag_limited_low | run::flag_limited_high)) != 0;
         // The load acts where the output does, without the output's limits.
-        const bool loaded = t >= duty.load_time_s * (1.0 - 1e-12);
+        const bool loaded = t >= duty.load_time * (1.0 - 1e-12);
         value = plant.step(output + (loaded ? duty.load_step : 0.0), line.data());
     }
     return trend;
@@ -72,24 +72,24 @@ Figures figures(const Trend& trend) {
     const double step = duty.setpoint_step, h = trend.time_s[1] - trend.time_s[0];
     double previous = duty.resting_output(), highest = 0.0;
     // A load step later on is another story than the set-point step.
-    const bool load_follows = duty.load_step != 0.0 && duty.load_time_s > 0.0;
+    const bool load_follows = duty.load_step != 0.0 && duty.load_time > 0.0;
     std::size_t outside = 0, followed = 0;  // one past the last sample outside the band; samples looked at
     for (std::size_t k = 0; k < n; ++k) {
         const double error = trend.setpoint[k] - trend.process_value[k];
         f.integrated_absolute_error += std::abs(error) * h;
         f.valve_travel += std::abs(trend.output[k] - previous);
         previous = trend.output[k];
-        if (step != 0.0 && !(load_follows && trend.time_s[k] > duty.load_time_s)) {
+        if (step != 0.0 && !(load_follows && trend.time_s[k] > duty.load_time)) {
             followed = k + 1;
             highest = std::max(highest, -error / step);
             if (std::abs(error) > 0.02 * std::abs(step)) outside = k + 1;
         }
-        if (duty.load_step != 0.0 && trend.time_s[k] >= duty.load_time_s)
+        if (duty.load_step != 0.0 && trend.time_s[k] >= duty.load_time)
             f.peak_load_error = std::max(f.peak_load_error.value_or(0.0), std::abs(error));
     }
     if (step != 0.0) {
         f.overshoot_percent = 100.0 * highest;
-        if (outside < followed) f.settling_time_s = trend.time_s[outside];
+        if (outside < followed) f.settling_time = trend.time_s[outside];
     }
     return f;
 }

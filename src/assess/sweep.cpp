@@ -51,12 +51,11 @@ public:
             const double growth = std::max(low, first);
             const double high = low + (dead_time > 0.0 ? std::min(growth, 1.0 / dead_time) : growth);
             Todo todo;
-            todo.phase = !curve_.constant_phase() && result_.phase_crossings.size() < most_crossings;
+            todo.phase = !curve_.constant_phase();
             visit(low, high, todo, 0);
             low = high;
             if (!result_.complete || finished(low)) break;
         }
-        end_ = low;
         finish();
         return std::move(result_);
     }
@@ -122,7 +121,7 @@ private:
             return bound < rest * (1.0 + 1e-6) || bound < 1e-7;
         if (curve_.loop().dead_time() == 0.0)  // the phase has settled toward its last value
             return w > 1e3 * curve_.largest_root() || curve_.largest_root() == 0.0;
-        return bound < largest_negative_ || bound < 1e-3 || bound < rest * (1.0 + 1e-3);
+        return bound < std::max(result_.largest_below_one, 1e-12) || bound < rest * (1.0 + 1e-3);
     }
 
     void visit(double low, double high, Todo todo, int depth) {
@@ -178,16 +177,15 @@ private:
         if (!(std::abs(point.slope.imag()) > slope_change) || !(std::abs(angle) + change < 3.0)) return false;
         const auto f = [&](double w) { return angle_from_negative(curve_.value(w)); };
         const double at_low = f(low), at_high = f(high);
-        if ((at_low > 0.0) != (at_high > 0.0) && low > 0.0) {
-            const double w = root_between(f, low, high);
-            result_.phase_crossings.push_back(w);
-            largest_negative_ = std::max(largest_negative_, below_one(std::abs(curve_.value(w))));
-        } else if ((at_low > 0.0) != (at_high > 0.0) && std::abs(at_low) > 1e-12) {
-            result_.phase_crossings.push_back(root_between(f, low, high));
+        if ((at_low > 0.0) != (at_high > 0.0) && (low > 0.0 || std::abs(at_low) > 1e-12)) {
+            const double w = root_between(f, low, high), gain = std::abs(curve_.value(w));
+            if (result_.phase_crossings.size() < most_crossings) result_.phase_crossings.push_back(w);
+            if (gain < 1.0) result_.largest_below_one = std::max(result_.largest_below_one, gain);
+            if (gain > 1.0 && (result_.smallest_above_one == 0.0 || gain < result_.smallest_above_one))
+                result_.smallest_above_one = gain;
         }
         return true;
     }
-    static double below_one(double x) noexcept { return x < 1.0 ? x : 0.0; }
 
     // X = L or 1/L in the middle of a piece, with the derivatives of its logarithm.
     struct Middle {
@@ -266,7 +264,6 @@ private:
     const LoopCurve& curve_;
     SweepResult result_;
     std::complex<double> last_ = 1.0;
-    double largest_negative_ = 0.0, end_ = 0.0;
     std::size_t points_ = 0;
 };
 

@@ -17,7 +17,9 @@ struct Closest {
 
 struct SweepResult {
     std::vector<double> gain_crossings;   ///< rad/s, ascending
-    std::vector<double> phase_crossings;  ///< rad/s, ascending
+    std::vector<double> phase_crossings;  ///< rad/s, ascending, at most a thousand
+    double largest_below_one = 0.0;       ///< largest |L| below 1 at a phase crossing, of all of them
+    double smallest_above_one = 0.0;      ///< smallest |L| above 1 at a phase crossing; 0 for none
     Closest to_minus_one;                 ///< of L
     Closest inverse_to_minus_one;         ///< of 1/L
     double winding = 0.0;                 ///< change of arg(1 + L) over all frequencies, rad

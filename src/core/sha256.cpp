@@ -57,7 +57,7 @@ void Sha256::add(const void* data, std::size_t size) noexcept {
     }
 }
 
-std::string Sha256::hexadecimal() noexcept {
+std::string Sha256::hexadecimal() {
     const std::uint64_t bits = total_ * 8;
     const std::uint8_t one = 0x80, zero = 0;
     add(&one, 1);

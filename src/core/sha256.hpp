@@ -14,7 +14,7 @@ class Sha256 {
 public:
     void add(const void* data, std::size_t size) noexcept;
     /// The digest in lower-case hexadecimal; the object is used up.
-    std::string hexadecimal() noexcept;
+    std::string hexadecimal();
 
 private:
     void process(const std::uint8_t* block) noexcept;

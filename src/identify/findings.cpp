@@ -3,6 +3,7 @@
 #include <Eigen/Dense>
 #include <algorithm>
 #include <cmath>
+#include <limits>
 
 namespace tauwright {
 inline namespace v0 {
@@ -101,7 +102,7 @@ void find_controller(const Record& record, const FitData& data, std::vector<Find
     const double explained = explained_share(A, moves);
     if (explained > 0.5)
         findings.push_back({FindingCode::output_moved_by_controller, Advice::test_again,
-                            rounded(100.0 * explained, 2) +
+                            rounded(100.0 * explained) +
                                 " % of the output's movement follows from the process value at the same moment, as a controller "
                                 "moves it" + remedy,
                             explained, data.edges.front().sample, data.edges.back().sample});
@@ -124,12 +125,36 @@ void find_weak_response(const FitData& data, const FitResult& result, FittedMode
     const double size = response_size(data, fit.form, result.parameters);
     const auto error = fit.standard_error(fit.form == Form::integrating_plus_dead_time ? "slope" : "gain");
     const double certainty = error ? std::abs(fit.gain) / *error : 1e9;
-    if (size >= 3.0 * fit.noise && certainty >= 5.0 && is_finite(certainty)) return;
+    fit.response_to_noise = fit.noise > 0.0 ? size / fit.noise : std::numeric_limits<double>::infinity();
+    const bool vague = fit.standard_error("dead_time").value_or(0.0) > 0.25 * data.span;
+    if (size >= 3.0 * fit.noise && certainty >= 5.0 && is_finite(certainty) && !vague) return;
+    if (!is_finite(certainty) || certainty == 0.0 || vague) {
+        fit.findings.push_back({FindingCode::below_noise, Advice::test_again,
+                                "the record cannot tell gain, lag and dead time apart; test again with faster sampling and at least one "
+                                "move held until the response has settled",
+                                fit.response_to_noise, data.edges.front().sample, data.edges.back().sample});
+        return;
+    }
     fit.findings.push_back({FindingCode::below_noise, Advice::test_again,
                             "the response is " + rounded(fit.noise > 0.0 ? size / fit.noise : 0.0) +
                                 " times the noise (its standard deviation); test again with moves at least " +
                                 rounded(std::max(2.0, 15.0 * fit.noise / std::max(size, 1e-300)), 2) + " times as large",
                             fit.noise > 0.0 ? size / fit.noise : 0.0, data.edges.front().sample, data.edges.back().sample});
+}
+
+// Residuals that wander in company with the moves: the form, a load, a drift or the valve does not suit.
+void find_misfit(const Record& record, const FitData& data, const FitResult& result, const FitOptions& options, FittedModel& fit) {
+    const double size = response_size(data, fit.form, result.parameters);
+    const double wandering = residual_shape(data, fit.form, result, options).wandering;
+    const double share = size > 0.0 ? wandering / size : 0.0;
+    // Where the wandering is no larger than the noise from sample to sample, it is noise.
+    if (!(share > 0.015) || wandering < 1.5 * std::sqrt(std::max(fit.noise * fit.noise - wandering * wandering, 0.0))) return;
+    fit.findings.push_back({FindingCode::model_does_not_fit, share > 0.03 ? Advice::test_again : Advice::tune_with_care,
+                            "the residuals wander by " + rounded(100.0 * share, 2) +
+                                " % of the response: the model does not follow the record. Look at the picture for a load or a drift "
+                                "during the test, for dead band, or for a process that oscillates or first goes the wrong way; fit "
+                                "with a drift, or test again",
+                            share, 0, record.size() - 1});
 }
 
 void find_early_end(const Record& record, const FitData& data, FittedModel& fit) {
@@ -254,6 +279,7 @@ void look_at_record(const Record& record, const FitData& data, std::vector<Findi
 void look_at_fit(const Record& record, const FitData& data, const FitResult& result, const FitOptions& options,
                  FittedModel& fit) {
     find_weak_response(data, result, fit);
+    find_misfit(record, data, result, options, fit);
     find_early_end(record, data, fit);
     find_unsteady_start(data, result, options, fit);
     find_unequal_gains(data, result, options, fit);

@@ -164,7 +164,11 @@ void report(const Candidate& c, const FitData& data, FittedModel& fit) {
     double total = 0.0;
     for (double y : data.y) total += y * y;
     fit.r_squared = total > 0.0 ? 1.0 - fit.sum_of_squares / total : 0.0;
-    const AtStart start = at_start(c, fit.noise);
+    const ResidualShape shape = residual_shape(data, c.form, c.result, c.options);
+    // Small correlations are chance; 3 / sqrt(n) is three standard errors of none at all.
+    if (shape.correlation > 3.0 / std::sqrt(static_cast<double>(n))) fit.residual_correlation = std::min(shape.correlation, 0.999);
+    const double widening = std::sqrt((1.0 + fit.residual_correlation) / (1.0 - fit.residual_correlation));
+    const AtStart start = at_start(c, fit.noise * widening);
     const auto& v = start.parameters;
     const bool integrating = c.form == Form::integrating_plus_dead_time;
     fit.gain = v[at_gain];
@@ -205,8 +209,14 @@ FittedModel identify(const Record& record, const IdentifyOptions& options) {
                                                       " samples; give a record with a healthy measurement");
     FittedModel fit;
     fit.first_output = record.output()[0];
+    const auto [lowest, highest] = std::minmax_element(record.output().begin(), record.output().end());
+    fit.tested_output = {*lowest, *highest};
     const std::optional<Record> unclipped = without_clipped(record, fit.findings);
     const FitData data = fit_data(unclipped ? *unclipped : record);
+    if (!data.y.empty()) {
+        const auto [low, high] = std::minmax_element(data.y.begin(), data.y.end());
+        fit.tested_process_value = {*low + data.mean, *high + data.mean};
+    }
     if (!moves_seen(data)) {
         fit.findings.push_back({FindingCode::no_move, Advice::test_again,
                                 "the output does not move while the process value is seen; test again with output moves", 0.0,

@@ -1,5 +1,6 @@
 // The gain each move shows on its own, with lag and dead time as fitted to all of them.
 #include <Eigen/Cholesky>
+#include <algorithm>
 #include <cmath>
 
 #include "identify/decay_sums.hpp"
@@ -100,6 +101,26 @@ GroupGains group_gains(const FitData& data, Form form, const FitResult& fit, con
         out.standard_errors[g] = noise * std::sqrt(std::max(inverse(i, i), 0.0));
     }
     return out;
+}
+
+ResidualShape residual_shape(const FitData& data, Form form, const FitResult& fit, const FitOptions& options) {
+    const std::vector<double> model = response_at(data.t, data.edges, form, fit.parameters, options.time_center);
+    const std::size_t n = data.t.size();
+    double squares = 0.0, products = 0.0, differences = 0.0, previous = 0.0;
+    for (std::size_t i = 0; i < n; ++i) {
+        const double r = data.y[i] - model[i];
+        squares += r * r;
+        if (i > 0) {
+            products += r * previous;
+            differences += (r - previous) * (r - previous);
+        }
+        previous = r;
+    }
+    if (n < 3 || !(squares > 0.0)) return {};
+    const auto count = static_cast<double>(n);
+    // Independent residuals differ from their neighbors by twice their variance.
+    const double slow = squares / count - 0.5 * differences / (count - 1.0);
+    return {products / squares, slow > 0.0 ? std::sqrt(slow) : 0.0};
 }
 
 std::vector<double> response_at(const std::vector<double>& t, const std::vector<Edge>& edges, Form form,

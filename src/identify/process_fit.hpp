@@ -43,6 +43,14 @@ struct GroupGains {
 GroupGains group_gains(const FitData& data, Form form, const FitResult& fit, const FitOptions& options,
                        const std::vector<std::size_t>& group_of, std::size_t groups, double noise);
 
+/// What the residuals say: their correlation from one sample to the next, and the root mean square of
+/// the part that wanders slowly, which noise from sample to sample cannot account for.
+struct ResidualShape {
+    double correlation = 0.0;
+    double wandering = 0.0;
+};
+ResidualShape residual_shape(const FitData& data, Form form, const FitResult& fit, const FitOptions& options);
+
 /// Process value of the fitted model at the ascending times `t`.
 std::vector<double> response_at(const std::vector<double>& t, const std::vector<Edge>& edges, Form form,
                                 const ParameterArray& parameters, double time_center);

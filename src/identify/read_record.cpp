@@ -46,7 +46,7 @@ std::string quoted(std::string_view text) {
 
 double parsed_number(const CsvReader& in, const char* column, std::string_view field) {
     std::string_view text = trimmed(field);
-    if (text.starts_with('+')) text.remove_prefix(1);
+    if (text.starts_with('+') && !text.starts_with("+-")) text.remove_prefix(1);
     double value = 0.0;
     const auto [end, problem] = std::from_chars(text.data(), text.data() + text.size(), value);
     if (problem == std::errc::result_out_of_range)
@@ -110,7 +110,7 @@ bool is_good(const CsvReader& in, std::string_view field) {
 
 bool is_automatic(const CsvReader& in, std::string_view field) {
     const std::string word = lower(trimmed(field));
-    if (word == "automatic" || word == "auto") return true;
+    if (word == "automatic") return true;
     if (word == "manual") return false;
     malformed(in, "mode is " + quoted(field) + "; write manual or automatic");
 }
@@ -120,12 +120,15 @@ std::optional<Range> range_in(std::string_view comment, std::string_view key, co
     comment = trimmed(comment);
     if (!lower(comment.substr(0, key.size())).starts_with(key)) return std::nullopt;
     comment = trimmed(comment.substr(key.size()));
-    if (!comment.starts_with(':')) return std::nullopt;
+    if (!comment.starts_with(':'))
+        throw Error(error_code::file_malformed, name + ": the comment " + std::string(key) + " has no colon; write it as '# " +
+                                                    std::string(key) + ": 0 100 %'");
     comment = trimmed(comment.substr(1));
     Range range;
     for (double* end : {&range.low, &range.high}) {
         const auto word = comment.substr(0, std::min(comment.find_first_of(" \t"), comment.size()));
-        const auto [stop, problem] = std::from_chars(word.data(), word.data() + word.size(), *end);
+        const std::size_t plus = word.starts_with('+') && !word.starts_with("+-") ? 1 : 0;
+        const auto [stop, problem] = std::from_chars(word.data() + plus, word.data() + word.size(), *end);
         if (word.empty() || problem != std::errc{} || stop != word.data() + word.size())
             throw Error(error_code::file_malformed, name + ": the comment " + std::string(key) + " has " + quoted(word) +
                                                         " where a number belongs; write it as '# " + std::string(key) +
@@ -153,7 +156,7 @@ double seconds_of(const CsvReader& in, const Columns& columns, const std::vector
         throw Error(error_code::time_zone_missing, in.place() + ": time is " + quoted(field) +
                                                        "; add Z or an offset such as +01:00, so that clock changes cannot hide");
     if (!origin_ns) origin_ns = stamp->nanoseconds;
-    return static_cast<double>(stamp->nanoseconds - *origin_ns) * 1e-9;
+    return static_cast<double>(stamp->nanoseconds - *origin_ns) / 1e9;
 }
 
 }  // namespace
@@ -193,8 +196,14 @@ Record read_record_text(std::string_view text, const std::string& name) {
         throw Error(error_code::record_too_short, name + " has a header row but no samples; give a record with samples");
     if (!any_bad) record.good.clear();
     for (std::string_view comment : in.comments()) {
-        if (auto range = range_in(comment, "output_range", name)) record.output_range = range;
-        if (auto range = range_in(comment, "process_value_range", name)) record.process_value_range = range;
+        for (const auto& [key, place] : {std::pair{"output_range", &record.output_range},
+                                         std::pair{"process_value_range", &record.process_value_range}}) {
+            auto range = range_in(comment, key, name);
+            if (!range) continue;
+            if (*place)
+                throw Error(error_code::conflicting_arguments, name + ": the comment " + key + " stands twice; keep one of them");
+            *place = std::move(range);
+        }
     }
     Record result(std::move(record));
     detail::Sha256 hash;

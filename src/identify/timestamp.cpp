@@ -67,7 +67,7 @@ std::optional<Stamp> parse_timestamp(std::string_view text) noexcept {
     in.expect(':');
     const int second = in.digits(2);
     const std::int64_t ns = fraction_ns(in);
-    if (in.failed || hour > 23 || minute > 59 || second > 59) return std::nullopt;
+    if (in.failed || hour > 23 || minute > 59 || second > 60) return std::nullopt;
     using namespace std::chrono;
     const year_month_day date{std::chrono::year{year}, std::chrono::month{static_cast<unsigned>(month)},
                               std::chrono::day{static_cast<unsigned>(day)}};
@@ -89,7 +89,8 @@ std::optional<Stamp> parse_timestamp(std::string_view text) noexcept {
         }
         if (!in.rest.empty()) return std::nullopt;
     }
-    if (seconds > 9'000'000'000 || seconds < -9'000'000'000) return std::nullopt;  // beyond int64 nanoseconds
+    // Two stamps must differ by less than int64 nanoseconds hold: plant history lies within 1900 to 2150.
+    if (year < 1900 || year > 2150) return std::nullopt;
     stamp.nanoseconds = seconds * 1'000'000'000 + ns;
     return stamp;
 }

@@ -123,7 +123,8 @@ std::optional<ParameterMatrix> inverse_of_free(const NormalEquations& equations,
     const auto chosen = indices(free);
     const ScaledSystem system = scaled(equations, chosen);
     const Eigen::LDLT<Matrix> factors(system.gram);
-    if (chosen.empty() || !(factors.vectorD().minCoeff() > 1e-14)) return std::nullopt;
+    // A parameter that no sample feels has a column of zeros.
+    if (chosen.empty() || !(system.scale.minCoeff() > 0.0) || !(factors.vectorD().minCoeff() > 1e-14)) return std::nullopt;
     const Matrix inverse_scaled = factors.solve(Matrix::Identity(system.gram.rows(), system.gram.cols()));
     for (std::size_t i = 0; i < chosen.size(); ++i)
         for (std::size_t j = 0; j < chosen.size(); ++j) {

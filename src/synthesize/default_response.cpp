@@ -1,5 +1,6 @@
 #include "synthesize/default_response.hpp"
 
+#include <algorithm>
 #include <cmath>
 
 namespace tauwright {
@@ -19,10 +20,15 @@ double first_moment(const Factors& kept) {
 }  // namespace
 
 TransferFunction default_response(const TransferFunction& process, const DesiredResponse& desired) {
-    if (process.unstable_poles() > 0 || process.integrators() > 1)
+    const auto on_axis = [](const QuadraticFactor& f) { return f.damping == 0.0; };
+    const auto& pairs = process.factors().lag_pairs;
+    const auto& lead_pairs = process.factors().lead_pairs;
+    if (process.unstable_poles() > 0 || process.integrators() > 1 || process.zeros_at_origin() > 0 ||
+        std::any_of(pairs.begin(), pairs.end(), on_axis) || std::any_of(lead_pairs.begin(), lead_pairs.end(), on_axis))
         throw Error(error_code::unsupported_form,
                     "process is " + process.text() +
-                        "; a default response takes stable processes with at most one integrator: give a transfer_function");
+                        "; a default response takes stable processes with at most one integrator and a gain at rest: give a "
+                        "transfer_function");
     const double tau_c = *desired.time_constant;
     const Factors& g = process.factors();
     Factors t;

@@ -30,7 +30,7 @@ double time_constant_of(const TransferFunction& response) {
 
 void find_prediction(const TransferFunction& process, const TransferFunction& response, std::vector<Obstacle>& list) {
     const double missing = process.dead_time() - response.dead_time();
-    if (missing > 0.0)
+    if (missing > 1e-12 * process.dead_time())
         list.push_back({ObstacleCode::prediction_needed, Severity::impossible,
                         "the response asked for begins " + shown(missing) +
                             " s before the process can answer; the controller would have to predict",
@@ -67,12 +67,11 @@ void find_improper(const TransferFunction& process, const TransferFunction& resp
 void find_cancelled_zeros(const TransferFunction& process, const TransferFunction& response, std::vector<Obstacle>& list) {
     // What the response does not keep of the process's zeros, the controller has as poles.
     const TransferFunction filter = struck_out(response, process);
-    if (filter.unstable_poles() == 0) return;
     for (const auto& p : filter.poles()) {
-        if (p.real() <= 0.0 || p.imag() < 0.0) continue;
+        if (p.real() < 0.0 || p.imag() < 0.0) continue;
         list.push_back({ObstacleCode::right_half_plane_zero_cancelled, Severity::impossible,
                         "the zero at " + shown(p.real()) + (p.imag() > 0.0 ? " + " + shown(p.imag()) + "j" : std::string()) +
-                            " rad/s answers the wrong way first; cancelling it makes the controller output grow without end",
+                            " rad/s would be cancelled by the controller, whose output then does not settle",
                         p.real(), "keep this zero in the response asked for"});
     }
 }
@@ -80,12 +79,13 @@ void find_cancelled_zeros(const TransferFunction& process, const TransferFunctio
 void find_cancelled_poles(const TransferFunction& process, const InternalModelController& controller,
                           std::vector<Obstacle>& list) {
     for (const auto& p : process.poles()) {
-        if (p.real() <= 0.0 || p.imag() < 0.0) continue;
+        if (p.real() < 0.0 || p.imag() < 0.0 || p == 0.0) continue;  // those at 0 are counted below
         const double missing = std::abs(controller.one_minus_response(p));
         if (missing <= 1e-9) continue;
         list.push_back({ObstacleCode::unstable_pole_cancelled, Severity::impossible,
-                        "the response differs from 1 by " + shown(missing) + " at the unstable pole " + shown(p.real()) +
-                            " rad/s; the controller would cancel the pole and every load would run away",
+                        "the response differs from 1 by " + shown(missing) + " at the pole " + shown(p.real()) +
+                            (p.imag() > 0.0 ? " + " + shown(p.imag()) + "j" : std::string()) +
+                            " rad/s; the controller would cancel a pole that does not decay, and every load would stay or run away",
                         p.real(), "ask for a response that is 1 at the unstable pole"});
     }
     if (process.integrators() > controller.integrators())

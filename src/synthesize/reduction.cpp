@@ -69,7 +69,7 @@ std::optional<PidSettings> settings_of(double ki, double k1, double k2, double f
     }
     s.gain = gain;
     if (ki != 0.0) s.integral_time = gain / ki;
-    s.derivative_time = derivative / gain;
+    s.derivative_time = derivative == 0.0 ? 0.0 : derivative / gain;
     if (s.integral_time && *s.integral_time < 0.0) negative = *s.integral_time;
     if (s.derivative_time < 0.0) negative = s.derivative_time;
     if (negative < 0.0) return std::nullopt;

@@ -42,7 +42,7 @@ Synthesis synthesize(const TransferFunction& process, const DesiredResponse& des
     for (const Obstacle& o : result.obstacles) result.buildable &= o.severity != Severity::impossible;
     if (!result.buildable) return result;
     TransferFunction filter = detail::struck_out(result.attained, process);
-    filter = filter.with_dead_time(result.attained.dead_time() - process.dead_time());
+    filter = filter.with_dead_time(std::max(0.0, result.attained.dead_time() - process.dead_time()));
     result.controller.emplace(std::move(filter), result.attained);
     const detail::Reduced reduced = detail::taylor_settings(process, result.attained);
     result.settings = reduced.settings;
@@ -58,6 +58,7 @@ Synthesis synthesize(const TransferFunction& process, const DesiredResponse& des
 std::complex<double> Synthesis::attained_with_settings(std::complex<double> s) const {
     if (!settings)
         throw Error(error_code::missing_argument, "settings are empty; only a synthesis that gives settings has this response");
+    if (s == 0.0 && (settings->integral_gain_per_s() != 0.0 || process.integrators() > 0)) return 1.0;
     const std::complex<double> L = process(s) * (*settings)(s);
     return L / (1.0 + L);
 }

@@ -1,6 +1,7 @@
 #include "tune/cautions.hpp"
 
 #include <algorithm>
+#include <cmath>
 
 namespace tauwright {
 inline namespace v0 {
@@ -20,6 +21,20 @@ const char* const standing[] = {
     "and the operating manual take precedence over this sheet.",
     "Operator in command. Agree the test and the change with the operator on shift; the operator may stop it at any time; "
     "someone watches the loop until it has settled through at least one load change.",
+};
+
+// Before a test is repeated.
+const char* const before_testing[] = {
+    "Before the test: state the mode. A loop in manual means nobody is correcting the process; write abort limits for process "
+    "value and output, and who acts on them.",
+    "Before the test: check what follows the output (cascades, overrides, selectors, split range, feedforward, ratio stations, "
+    "interlocks on rate or position). Put masters in manual first, or accept their response in writing.",
+    "Before the test: check alarm and trip settings against the expected excursion; do not bypass an interlock to make a test fit.",
+    "Do not test while another test, start-up, grade change, maintenance or alarm flood is in progress.",
+    "Integrating process (level, pressure, batch temperature): a single sustained step has no resting point; use a pulse or a "
+    "doublet and a time limit.",
+    "Possibly unstable in open loop, or exothermic: do not open the loop. Use a closed-loop test or none.",
+    "Hand valves, bypasses and spare pump line-ups must be as in normal running, or the model is of another plant.",
 };
 
 const char* const before_typing[] = {
@@ -50,25 +65,47 @@ bool one_direction_only(const FittedModel& fit) {
                                   std::none_of(fit.moves.begin(), fit.moves.end(), up));
 }
 
+// Kc times the noise of the record, in percent; 0 where units do not allow it.
+double noise_at_output_percent(const TuningSheet& sheet) {
+    if (!sheet.proposed || !sheet.process_value_range || !sheet.output_range) return 0.0;
+    return std::abs(sheet.proposed->settings.gain) * sheet.fit.noise / sheet.process_value_range->span() * 100.0;
+}
+
 bool found(const TuningSheet& sheet, FindingCode code) {
     return std::any_of(sheet.findings().begin(), sheet.findings().end(), [&](const Finding& f) { return f.code == code; });
 }
 
 void add_called_for(const TuningSheet& sheet, std::vector<std::string>& list) {
-    if (one_direction_only(sheet.fit) || found(sheet, FindingCode::ends_early))
-        list.push_back("Model is weak: the record is short or moves in one direction only. Prefer a slower time constant, or "
-                       "repeat the test.");
+    if (one_direction_only(sheet.fit) || found(sheet, FindingCode::ends_early) ||
+        (sheet.fit.model && sheet.fit.response_to_noise < 10.0))
+        list.push_back("Model is weak: the record is short, moves in one direction only, or its response is less than ten times the "
+                       "noise. Prefer a slower time constant, or repeat the test.");
     if (found(sheet, FindingCode::bad_samples_left_out))
-        list.push_back("Bad-quality samples were left out; dead time and gain rest on the others. Do not tighten on this record.");
+        list.push_back("Bad-quality samples were left out: dead time may be overstated or understated by up to the time between "
+                       "the samples that are left. Do not tighten on this record.");
+    if (sheet.as_found && sheet.as_found->margins.verdict != Verdict::stable)
+        list.push_back("As found, the loop would not be stable on this model. If it is stable in service, the action, form or unit of the "
+                       "as-found numbers is wrong, or the model is: do not enter anything before that is explained.");
+    if (sheet.proposed && !sheet.as_found)
+        list.push_back("No as-found settings were given: write them down before the change, or there is nothing to roll back to.");
+    const double noise = noise_at_output_percent(sheet);
+    if (noise > 1.0)
+        list.push_back("Measurement noise moves the output by about " + text_of(std::round(10.0 * noise) / 10.0) +
+                       " % (standard deviation): ask for a slower time constant, or filter the measurement.");
+    if (sheet.form && sheet.form->derivative_on == ActsOn::error &&
+        ((sheet.as_found && sheet.as_found->settings.derivative_time > 0.0) ||
+         (sheet.proposed && sheet.proposed->settings.derivative_time > 0.0)))
+        list.push_back("This controller's derivative acts on the error; the trends assume it on the process value, and miss the "
+                       "kick of a set-point step.");
     if (found(sheet, FindingCode::output_clipped))
         list.push_back("Output or process value stood on a limit; those samples say less than they seem to.");
-    if (sheet.speed && sheet.speed->time_constant_s < sheet.speed->effective_dead_time_s)
+    if (sheet.speed && sheet.speed->time_constant < sheet.speed->effective_dead_time)
         list.push_back("Faster than the dead time supports; a small growth of the dead time makes the loop unstable (see the "
                        "delay margin).");
-    if (!sheet.duty.scan_time_s)
+    if (!sheet.duty.scan_time)
         list.push_back("No scan time was given: margins hold for a continuous controller and are smaller in one that samples.");
     else if (sheet.proposed && sheet.proposed->settings.integral_time) {
-        const double h = *sheet.duty.scan_time_s;
+        const double h = *sheet.duty.scan_time;
         if (h > sheet.fit.dead_time / 3.0 || h > *sheet.proposed->settings.integral_time / 10.0)
             list.push_back("The scan is slow for these settings (more than a third of the dead time or a tenth of the integral "
                            "time); margins rest on half a scan standing in for it.");
@@ -85,6 +122,7 @@ void add_called_for(const TuningSheet& sheet, std::vector<std::string>& list) {
 std::vector<std::string> cautions_for(const TuningSheet& sheet) {
     std::vector<std::string> list(std::begin(standing), std::end(standing));
     add_called_for(sheet, list);
+    if (sheet.advice() == Advice::test_again) list.insert(list.end(), std::begin(before_testing), std::end(before_testing));
     if (sheet.proposed) {
         list.insert(list.end(), std::begin(before_typing), std::end(before_typing));
         list.insert(list.end(), std::begin(afterwards), std::end(afterwards));

@@ -48,6 +48,11 @@ template <class Visitor, class T> void describe_move(Visitor& v, T& x) {
     v("standard_error", x.standard_error);
 }
 
+template <class Visitor, class T> void describe_span(Visitor& v, T& x) {
+    v("low", x.low);
+    v("high", x.high);
+}
+
 template <class Visitor, class T> void describe_fit(Visitor& v, T& x) {
     v("form", x.form);
     v("form_reason", x.form_reason);
@@ -65,7 +70,11 @@ template <class Visitor, class T> void describe_fit(Visitor& v, T& x) {
     v("residual_rms", x.residual_rms);
     v("noise", x.noise);
     v("r_squared", x.r_squared);
+    v("residual_correlation", x.residual_correlation);
+    v("response_to_noise", x.response_to_noise);
     v("samples_used", x.samples_used);
+    v("tested_output", x.tested_output);
+    v("tested_process_value", x.tested_process_value);
     v("moves", x.moves);
     v("findings", x.findings);
 }
@@ -128,7 +137,7 @@ template <class Visitor, class T> void describe_entered(Visitor& v, T& x) {
 template <class Visitor, class T> void describe_gain_crossover(Visitor& v, T& x) {
     v("frequency_rad_s", x.frequency_rad_s);
     v("phase_margin_deg", x.phase_margin_deg);
-    v("delay_margin_s", x.delay_margin_s);
+    v("delay_margin_s", x.delay_margin);
 }
 
 template <class Visitor, class T> void describe_phase_crossover(Visitor& v, T& x) {
@@ -143,7 +152,7 @@ template <class Visitor, class T> void describe_robustness(Visitor& v, T& x) {
     v("gain_margin", x.gain_margin);
     v("gain_reduction_margin", x.gain_reduction_margin);
     v("phase_margin_deg", x.phase_margin_deg);
-    v("delay_margin_s", x.delay_margin_s);
+    v("delay_margin_s", x.delay_margin);
     v("max_sensitivity", x.max_sensitivity);
     v("max_sensitivity_frequency_rad_s", x.max_sensitivity_frequency);
     v("max_complementary_sensitivity", x.max_complementary_sensitivity);
@@ -154,18 +163,19 @@ template <class Visitor, class T> void describe_robustness(Visitor& v, T& x) {
 
 template <class Visitor, class T> void describe_figures(Visitor& v, T& x) {
     v("overshoot_percent", x.overshoot_percent);
-    v("settling_time_s", x.settling_time_s);
+    v("settling_time_s", x.settling_time);
     v("peak_load_error", x.peak_load_error);
     v("integrated_absolute_error", x.integrated_absolute_error);
     v("valve_travel", x.valve_travel);
 }
 
 template <class Visitor, class T> void describe_speed(Visitor& v, T& x) {
-    v("time_constant_s", x.time_constant_s);
+    v("time_constant_s", x.time_constant);
     v("reason", x.reason);
-    v("effective_dead_time_s", x.effective_dead_time_s);
-    v("half_scan_s", x.half_scan_s);
-    v("measurement_filter_time_s", x.measurement_filter_time_s);
+    v("effective_dead_time_s", x.effective_dead_time);
+    v("half_scan_s", x.half_scan);
+    v("integral_time_limited", x.integral_time_limited);
+    v("measurement_filter_time_s", x.measurement_filter_time);
 }
 
 template <class Visitor, class T> void describe_obstacle(Visitor& v, T& x) {
@@ -179,10 +189,10 @@ template <class Visitor, class T> void describe_obstacle(Visitor& v, T& x) {
 template <class Visitor, class T> void describe_duty(Visitor& v, T& x) {
     v("setpoint_step", x.setpoint_step);
     v("load_step", x.load_step);
-    v("load_time_s", x.load_time_s);
+    v("load_time_s", x.load_time);
     v("noise", x.noise);
     v("seed", x.seed);
-    v("scan_time_s", x.scan_time_s);
+    v("scan_time_s", x.scan_time);
     v("output_low", x.output_low);
     v("output_high", x.output_high);
     v("rest_output", x.rest_output);
@@ -227,6 +237,7 @@ TAUWRIGHT_DETAIL_DESCRIBED(QuadraticFactor, describe_pair)
 TAUWRIGHT_DETAIL_DESCRIBED(Factors, describe_factors)
 TAUWRIGHT_DETAIL_DESCRIBED(Finding, describe_finding)
 TAUWRIGHT_DETAIL_DESCRIBED(Move, describe_move)
+TAUWRIGHT_DETAIL_DESCRIBED(Span, describe_span)
 TAUWRIGHT_DETAIL_DESCRIBED(FittedModel, describe_fit)
 TAUWRIGHT_DETAIL_DESCRIBED(PidSettings, describe_settings)
 TAUWRIGHT_DETAIL_DESCRIBED(FieldLimits, describe_limits)

@@ -101,8 +101,10 @@ template <class T> void read(const Json& json, const std::string& path, T& x) {
         if (!json.is_boolean()) malformed(path, "is neither true nor false");
         x = json.get<bool>();
     } else if constexpr (std::is_integral_v<T>) {
-        const bool fits = json.is_number_unsigned() ? json.get<std::uint64_t>() <= static_cast<std::uint64_t>(std::numeric_limits<T>::max())
-                                                    : std::is_signed_v<T> && json.is_number_integer();
+        const bool fits = json.is_number_unsigned()
+                              ? json.get<std::uint64_t>() <= static_cast<std::uint64_t>(std::numeric_limits<T>::max())
+                              : std::is_signed_v<T> && json.is_number_integer() &&
+                                    json.get<std::int64_t>() >= static_cast<std::int64_t>(std::numeric_limits<T>::min());
         if (!fits) malformed(path, "is not a whole number in range");
         x = json.get<T>();
     } else if constexpr (is_word<T>) {
@@ -130,6 +132,20 @@ Json json_of(const TuningSheet& sheet) {
     return document;
 }
 
+// What other members rely on without looking again.
+void require_consistent(const TuningSheet& sheet) {
+    const FittedModel& fit = sheet.fit;
+    const std::size_t lags = fit.form == Form::first_order_plus_dead_time ? 1 : 0;
+    if (fit.lags.size() != lags) malformed("/fit/lags_s", "does not belong to the form");
+    if (fit.model.has_value() && fit.form == Form::automatic) malformed("/fit/model", "is given without a form");
+    if (fit.covariance.size() != fit.parameter_names.size() * fit.parameter_names.size())
+        malformed("/fit/covariance", "is not square in the parameters");
+    if (sheet.model.has_value() != fit.model.has_value()) malformed("/model", "and /fit/model are not both given");
+    if ((sheet.proposed || sheet.as_found) && !sheet.model) malformed("/proposed", "or /as_found stands without a model");
+    for (const auto* controller : {&sheet.as_found, &sheet.proposed})
+        if (*controller) require((*controller)->settings, "the sheet's settings");
+}
+
 // Names and units given by the caller may be any bytes; what is not UTF-8 is replaced, not refused.
 std::string text_of_json(const Json& json, int indent) {
     return json.dump(indent, ' ', false, Json::error_handler_t::replace);
@@ -143,7 +159,13 @@ TuningSheet sheet_of(const Json& document) {
                     "the document's schema is not " + std::string(sheet_schema) + " version " +
                         std::to_string(sheet_schema_version) + "; give a sheet, or read it with the library version that wrote it");
     TuningSheet sheet;
-    read(document, "", sheet);
+    try {
+        read(document, "", sheet);
+    } catch (const Error& e) {
+        if (e.code() == error_code::file_malformed) throw;
+        malformed("", std::string("holds an impossible value (") + e.what() + ")");
+    }
+    require_consistent(sheet);
     return sheet;
 }
 
@@ -157,7 +179,7 @@ TuningSheet TuningSheet::from_json(std::string_view json) {
     detail::Json document;
     try {
         document = detail::Json::parse(json);
-    } catch (const std::exception& e) {
+    } catch (const detail::Json::exception& e) {
         throw Error(error_code::file_malformed, std::string("json is not a JSON document (") + e.what() + "); give what json() wrote");
     }
     return detail::sheet_of(document);

@@ -12,7 +12,7 @@ namespace {
 constexpr std::size_t width = 78, label_width = 26;
 
 std::string shown(double x, int digits = 5) {
-    if (!is_finite(x)) return text_of(x) == "nan" ? "unknown" : "none needed";
+    if (!is_finite(x)) return "unknown";
     char buffer[40];
     const auto end = std::to_chars(buffer, buffer + sizeof buffer, x == 0.0 ? 0.0 : x, std::chars_format::general, digits);
     return {buffer, end.ptr};
@@ -92,7 +92,7 @@ void write_model(Page& page, const TuningSheet& s) {
     page.item("Advice", name_of(s.advice()));
     if (s.findings().empty()) page.item("Findings", "none");
     for (const Finding& f : s.findings())
-        page.item(name_of(f.code), f.message + " (samples " + std::to_string(f.first) + " to " + std::to_string(f.last) + ")");
+        page.item(name_of(f.code), f.message + " (samples " + std::to_string(f.first + 1) + " to " + std::to_string(f.last + 1) + " of the record)");
     if (!fit.model) return;
     const std::string pv = unit_of(s.process_value_range, "process-value unit"), op = unit_of(s.output_range, "output unit");
     const bool integrating = fit.form == Form::integrating_plus_dead_time;
@@ -105,7 +105,14 @@ void write_model(Page& page, const TuningSheet& s) {
     if (!integrating) page.item("Lag", with_error(fit, fit.lags[0], "lag_1", "s"));
     page.item("Dead time", with_error(fit, fit.dead_time, "dead_time", "s"));
     page.item("Residual", shown(fit.residual_rms, 3) + " " + pv + " rms over " + std::to_string(fit.samples_used) +
-                              " samples; R squared " + shown(fit.r_squared));
+                              " samples; R squared " + shown(fit.r_squared) +
+                              (fit.residual_correlation > 0.0 ? "; neighbors correlated by " + shown(fit.residual_correlation, 2) +
+                                                                    ", standard errors widened for it"
+                                                              : ""));
+    page.item("Range tested", "output " + shown(fit.tested_output.low) + " to " + shown(fit.tested_output.high) + " " + op +
+                                  ", process value " + shown(fit.tested_process_value.low) + " to " +
+                                  shown(fit.tested_process_value.high) + " " + pv);
+    page.item("Response", shown(fit.response_to_noise, 3) + " times the noise (standard deviation)");
     for (std::size_t i = 0; i < fit.moves.size(); ++i)
         page.item("Move " + std::to_string(i + 1) + " alone", (fit.moves[i].size > 0 ? "+" : "") + shown(fit.moves[i].size) + " " +
                                                                  op + ": " + shown(fit.moves[i].gain) + " +- " +
@@ -116,9 +123,23 @@ void write_speed(Page& page, const TuningSheet& s) {
     if (!s.speed) return;
     const SpeedChoice& v = *s.speed;
     page.section("The response asked for");
-    page.item("Closed-loop time constant", shown(v.time_constant_s) + " s (" + v.reason + ")");
-    page.item("Effective dead time", shown(v.effective_dead_time_s) + " s = dead time " + shown(s.fit.dead_time) + " + half a scan " +
-                                         shown(v.half_scan_s) + " + filter " + shown(v.measurement_filter_time_s));
+    page.item("Closed-loop time constant", shown(v.time_constant) + " s (" + v.reason + ")");
+    page.item("Effective dead time", shown(v.effective_dead_time) + " s = dead time " + shown(s.fit.dead_time) + " + half a scan " +
+                                         shown(v.half_scan) + " + filter " + shown(v.measurement_filter_time));
+    page.item("Settings", "follow from the model with the effective dead time in place of its own; the margins below are those of "
+                          "the model itself");
+    if (v.integral_time_limited)
+        page.item("Integral time", "limited to 4 (time constant + effective dead time) = " +
+                                       shown(4.0 * (v.time_constant + v.effective_dead_time)) +
+                                       " s, so that the response to a load does not drag");
+    const Duty& d = s.duty;
+    page.item("Scan time", d.scan_time ? shown(*d.scan_time) + " s" : "not given");
+    page.item("Output limits", shown(d.output_low) + " to " + shown(d.output_high) + " %");
+    if (d.scan_time && (d.setpoint_step != 0.0 || d.load_step != 0.0))
+        page.item("Trends", "set-point step " + shown(d.setpoint_step) + " % of span at 0 s; load step " + shown(d.load_step) +
+                                " % of output at " + shown(d.load_time) + " s; measurement noise " + shown(d.noise) +
+                                " % (standard deviation); from output " + shown(d.resting_output()) + " % and process value " +
+                                shown(d.resting_process_value()) + " % of span");
     for (const Obstacle& o : s.obstacles)
         page.item(name_of(o.code), std::string(name_of(o.severity)) + ": " + o.message + ". Instead: " + o.repair);
 }
@@ -129,6 +150,7 @@ struct Cell {
 
 std::string optional_text(const std::optional<double>& x, const std::string& unit, const char* absent) {
     if (!x) return absent;
+    if (!is_finite(*x)) return "no limit";
     return shown(*x) + (is_finite(*x) && !unit.empty() ? " " + unit : "");
 }
 
@@ -141,17 +163,18 @@ std::vector<Cell> fields_of(const TuningSheet& s, const SheetController& c) {
     };
     const PidSettings& p = c.settings;
     if (!c.entered || !s.form) {
-        add("Gain", p.gain, s.gain_unit);
-        if (p.gain == 0.0) add("Integral gain", p.integral_gain_per_s(), "1/s");
-        else if (p.integral_time) add("Integral time", p.integral_time, "s");
-        else cells.push_back({"Integral time", "none"});
-        add("Derivative time", p.derivative_time, "s");
-        if (p.derivative_time > 0.0) add("Derivative filter time", p.filter_time, "s");
+        cells.push_back({"Gain", shown(p.gain, 6) + " " + s.gain_unit});
+        if (p.gain == 0.0) cells.push_back({"Integral gain", shown(p.integral_gain_per_s(), 6) + " 1/s"});
+        else cells.push_back({"Integral time", p.integral_time ? shown(*p.integral_time, 6) + " s" : "none"});
+        cells.push_back({"Derivative time", shown(p.derivative_time, 6) + " s"});
+        if (p.derivative_time > 0.0) cells.push_back({"Derivative filter time", shown(p.filter_time, 6) + " s"});
     } else {
         const Entered& e = *c.entered;
         const std::string ti = s.form->integral_unit == TimeUnit::minutes ? "min" : "s";
         const std::string td = s.form->derivative_unit == TimeUnit::minutes ? "min" : "s";
-        add("Gain", e.gain, s.form->gain_unit == GainUnit::percent ? "%/%" : "engineering units");
+        add("Gain", e.gain, s.form->gain_unit == GainUnit::percent
+                                ? "%/%"
+                                : unit_of(s.output_range, "output unit") + " per " + unit_of(s.process_value_range, "unit"));
         add("Proportional band", e.proportional_band, "%");
         add("Integral time", e.integral_time, ti);
         add("Repeats", e.repeats, "per " + ti);
@@ -160,7 +183,7 @@ std::vector<Cell> fields_of(const TuningSheet& s, const SheetController& c) {
         add("Derivative gain", e.derivative_gain, td);
         add("Derivative filter time", e.filter_time, td);
         add("Derivative filter ratio", e.filter_ratio, "");
-        cells.push_back({"Action", name_of(e.action)});
+        cells.push_back({"Action", s.form->action_as == ActionAs::sign ? "by the sign of the gain" : name_of(e.action)});
     }
     add("Measurement filter", p.measurement_filter_time, "s");
     add("Set-point weight", p.setpoint_weight, "");
@@ -171,16 +194,16 @@ std::vector<Cell> margins_of(const SheetController& c) {
     const Robustness& m = c.margins;
     std::vector<Cell> cells{{"Verdict", name_of(m.verdict)},
                             {"Gain margin", optional_text(m.gain_margin, "", "-")},
-                            {"Gain reduction margin", m.gain_reduction_margin == 0.0 ? "none needed" : optional_text(m.gain_reduction_margin, "", "-")},
+                            {"Gain reduction margin", m.gain_reduction_margin == 0.0 ? "no limit" : optional_text(m.gain_reduction_margin, "", "-")},
                             {"Phase margin", optional_text(m.phase_margin_deg, "deg", "-")},
-                            {"Delay margin", optional_text(m.delay_margin_s, "s", "-")},
+                            {"Delay margin", optional_text(m.delay_margin, "s", "-")},
                             {"Largest sensitivity Ms", optional_text(m.max_sensitivity, "", "-")},
                             {"Largest |T|, Mt", optional_text(m.max_complementary_sensitivity, "", "-")}};
     if (c.figures) {
         const Figures& f = *c.figures;
         if (f.overshoot_percent) {
             cells.push_back({"Overshoot", optional_text(f.overshoot_percent, "%", "-")});
-            cells.push_back({"Settling time (2 %)", optional_text(f.settling_time_s, "s", "not in the trend")});
+            cells.push_back({"Settling time (2 %)", optional_text(f.settling_time, "s", "not in the trend")});
         }
         if (f.peak_load_error) cells.push_back({"Peak load error", optional_text(f.peak_load_error, "% of span", "-")});
         cells.push_back({"Integrated abs. error", shown(f.integrated_absolute_error) + " % s"});
@@ -203,6 +226,7 @@ void write_side_by_side(Page& page, const std::vector<Cell>& found, const std::v
 
 void write_controllers(Page& page, const TuningSheet& s) {
     page.section("Settings");
+    if (!s.form) page.item("Controller", "ideal form, Kc (e + 1/Ti integral e + Td de/dt), since no form was given");
     if (s.form)
         page.item("Controller", std::string(name_of(s.form->equation)) + " form; proportional on " + name_of(s.form->proportional_on) +
                                     ", derivative on " + name_of(s.form->derivative_on));

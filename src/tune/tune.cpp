@@ -53,7 +53,6 @@ TuningSheet opened(const Record& record, const TuningRequest& request) {
     sheet.process_value_range = record.process_value_range();
     sheet.output_range = record.output_range();
     if (sheet.form) {
-        check(*sheet.form);
         sheet.process_value_range = agreed(sheet.process_value_range, sheet.form->process_value_range, "process_value_range");
         sheet.output_range = agreed(sheet.output_range, sheet.form->output_range, "output_range");
         if (!sheet.process_value_range || !sheet.output_range)
@@ -62,6 +61,7 @@ TuningSheet opened(const Record& record, const TuningRequest& request) {
                             " is not given; settings in a controller's form need both ranges: give them with the record or the form");
         sheet.form->process_value_range = sheet.process_value_range;
         sheet.form->output_range = sheet.output_range;
+        check(*sheet.form);
     }
     const bool percent = sheet.process_value_range && sheet.output_range;
     sheet.gain_unit = percent ? "%/%" : "output unit/process-value unit";
@@ -85,12 +85,12 @@ void express_model(TuningSheet& sheet) {
 SpeedChoice choose_speed(const TuningSheet& sheet, const TuningRequest& request) {
     const FittedModel& fit = sheet.fit;
     SpeedChoice speed;
-    const double scan = sheet.duty.scan_time_s.value_or(0.0);
-    speed.half_scan_s = 0.5 * scan;
-    speed.measurement_filter_time_s = request.as_found ? request.as_found->measurement_filter_time : 0.0;
-    const double D = speed.effective_dead_time_s = fit.dead_time + speed.half_scan_s + speed.measurement_filter_time_s;
+    const double scan = sheet.duty.scan_time.value_or(0.0);
+    speed.half_scan = 0.5 * scan;
+    speed.measurement_filter_time = request.as_found ? request.as_found->measurement_filter_time : 0.0;
+    const double D = speed.effective_dead_time = fit.dead_time + speed.half_scan + speed.measurement_filter_time;
     if (request.time_constant) {
-        speed.time_constant_s = *request.time_constant;
+        speed.time_constant = *request.time_constant;
         speed.reason = "asked for";
         return speed;
     }
@@ -110,7 +110,7 @@ SpeedChoice choose_speed(const TuningSheet& sheet, const TuningRequest& request)
         floors.push_back({2.0 * *error, "two standard errors of the dead time"});
     const auto slowest = std::max_element(floors.begin(), floors.end(),
                                           [](const Floor& a, const Floor& b) { return a.seconds < b.seconds; });
-    speed.time_constant_s = slowest->seconds;
+    speed.time_constant = slowest->seconds;
     speed.reason = slowest->reason;
     return speed;
 }
@@ -118,31 +118,36 @@ SpeedChoice choose_speed(const TuningSheet& sheet, const TuningRequest& request)
 // Settings from the model with the effective dead time in place of its own.
 std::optional<PidSettings> designed(TuningSheet& sheet) {
     const SpeedChoice& speed = *sheet.speed;
-    const double D = speed.effective_dead_time_s;
+    const double D = speed.effective_dead_time;
     const Synthesis synthesis =
-        synthesize(sheet.model->with_dead_time(D), {.time_constant = speed.time_constant_s});
+        synthesize(sheet.model->with_dead_time(D), {.time_constant = speed.time_constant});
     sheet.obstacles = synthesis.obstacles;
     if (!synthesis.settings) return std::nullopt;
     PidSettings settings = *synthesis.settings;
-    settings.measurement_filter_time = speed.measurement_filter_time_s;
-    if (sheet.fit.form == Form::first_order_plus_dead_time && settings.integral_time)
-        settings.integral_time = std::min(*settings.integral_time, 4.0 * (speed.time_constant_s + D));
+    settings.measurement_filter_time = speed.measurement_filter_time;
+    const double limit = 4.0 * (speed.time_constant + D);
+    if (sheet.fit.form == Form::first_order_plus_dead_time && settings.integral_time && *settings.integral_time > limit) {
+        settings.integral_time = limit;
+        sheet.speed->integral_time_limited = true;
+        // The lag is no longer cancelled, so the load response does not drag.
+        std::erase_if(sheet.obstacles, [](const Obstacle& o) { return o.code == ObstacleCode::slow_pole_cancelled; });
+    }
     return settings;
 }
 
 std::optional<Figures> figures_of(const TuningSheet& sheet, const PidSettings& settings) {
     const Duty& duty = sheet.duty;
     const bool percent = sheet.process_value_range && sheet.output_range;
-    if (!duty.scan_time_s || !percent || (duty.setpoint_step == 0.0 && duty.load_step == 0.0)) return std::nullopt;
+    if (!duty.scan_time || !percent || (duty.setpoint_step == 0.0 && duty.load_step == 0.0)) return std::nullopt;
     const double horizon = trend_horizon(sheet);
-    if (horizon > 1e6 * *duty.scan_time_s) return std::nullopt;  // more scans than a trend is worth
+    if (horizon > 1e6 * *duty.scan_time) return std::nullopt;  // more scans than a trend is worth
     return figures(simulate(*sheet.model, settings, duty, horizon));
 }
 
 SheetController assessed(const TuningSheet& sheet, const PidSettings& settings, const std::optional<Entered>& entered) {
     SheetController c{.settings = settings, .entered = entered};
-    c.margins = robustness(*sheet.model, settings, {.scan_time_s = sheet.duty.scan_time_s});
-    c.figures = figures_of(sheet, settings);
+    c.margins = robustness(*sheet.model, settings, {.scan_time = sheet.duty.scan_time});
+    if (c.margins.verdict == Verdict::stable) c.figures = figures_of(sheet, settings);
     return c;
 }
 
@@ -169,6 +174,8 @@ void propose(TuningSheet& sheet, const TuningRequest& request) {
             entered = entered_as(*settings, *sheet.form);
             settings = settings_from(*entered, *sheet.form);
         } catch (const Error& e) {
+            using enum error_code;
+            if (e.code() != no_equivalent && e.code() != action_would_be_lost && e.code() != outside_field_limits) throw;
             // That this form cannot hold the settings is an outcome of the work, not bad input.
             sheet.withheld.push_back(std::string("the controller cannot hold the settings: ") + e.what());
             return;
@@ -192,9 +199,9 @@ void propose(TuningSheet& sheet, const TuningRequest& request) {
 
 double trend_horizon(const TuningSheet& sheet) {
     if (!sheet.speed) return 0.0;
-    const double settle = 8.0 * (sheet.speed->time_constant_s + sheet.speed->effective_dead_time_s);
-    const double both = sheet.duty.load_step != 0.0 ? sheet.duty.load_time_s + settle : settle;
-    const double scan = sheet.duty.scan_time_s.value_or(0.0);
+    const double settle = 8.0 * (sheet.speed->time_constant + sheet.speed->effective_dead_time);
+    const double both = sheet.duty.load_step != 0.0 ? sheet.duty.load_time + settle : settle;
+    const double scan = sheet.duty.scan_time.value_or(0.0);
     return std::max({settle, both, 2.0 * scan});
 }
 
@@ -208,6 +215,9 @@ TuningSheet tune(const Record& record, const TuningRequest& request) {
         if (f.advice > Advice::tune_with_care) sheet.withheld.push_back(f.message);
     if (sheet.model) {
         sheet.speed = choose_speed(sheet, request);
+        if (const double tau_c = sheet.speed->time_constant; !is_finite(tau_c) || !(tau_c > 0.0))
+            sheet.withheld.push_back("no closed-loop time constant follows from this model (it would be " + text_of(tau_c) +
+                                     " s); ask for one, or give a scan time");
         if (as_found) sheet.as_found = assessed(sheet, *as_found, request.as_found);
         if (sheet.withheld.empty()) propose(sheet, request);
     } else if (sheet.withheld.empty()) {

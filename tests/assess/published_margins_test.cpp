@@ -18,7 +18,7 @@ double quantity_of(const Robustness& r, const std::string& quantity) {
     REQUIRE(r.verdict == Verdict::stable);
     if (quantity == "GM") return r.gain_margin.value();
     if (quantity == "PM") return r.phase_margin_deg.value();
-    if (quantity == "DM") return r.delay_margin_s.value();
+    if (quantity == "DM") return r.delay_margin.value();
     if (quantity == "Ms") return r.max_sensitivity.value();
     if (quantity == "Mt") return r.max_complementary_sensitivity.value();
     if (quantity == "Ku") return 0.1 * r.gain_margin.value();
@@ -79,7 +79,7 @@ TEST_CASE("C06: first order plus dead time under PI with the integral time equal
             REQUIRE(r.verdict == Verdict::stable);
             CHECK(relative_error(r.gain_margin.value(), row.GM) <= 1e-10);
             CHECK(relative_error(r.phase_margin_deg.value(), row.PM) <= 1e-10);
-            CHECK(relative_error(r.delay_margin_s.value() / theta, row.DM) <= 1e-10);
+            CHECK(relative_error(r.delay_margin.value() / theta, row.DM) <= 1e-10);
             CHECK(relative_error(r.max_sensitivity.value(), row.Ms) <= 1e-5);
             CHECK(relative_error(r.max_complementary_sensitivity.value(), row.Mt) <= 1e-5);
             CHECK(r.gain_reduction_margin.value() == 0.0);
@@ -116,7 +116,7 @@ TEST_CASE("D11: half a scan stands in for the sampling", "[published]") {
     // Trade fact D11 (derived, recomputed, 2e-3): K = 2, tau = 10, theta = 3, Kc = 10/12, Ti = 10, h = 1.
     const auto G = first_order_plus_dead_time(2.0, 10.0, 3.0);
     const PidSettings s{.gain = 10.0 / 12.0, .integral_time = 10.0};
-    const auto continuous = robustness(G, s), sampled = robustness(G, s, {.scan_time_s = 1.0}), late = robustness(G, s, {.extra_delay_s = 0.5});
+    const auto continuous = robustness(G, s), sampled = robustness(G, s, {.scan_time = 1.0}), late = robustness(G, s, {.extra_delay = 0.5});
     CHECK(relative_error(continuous.gain_margin.value(), 3.141607648999999) <= 2e-3);
     CHECK(relative_error(continuous.phase_margin_deg.value(), 61.3520144735634) <= 2e-3);
     CHECK(relative_error(continuous.max_sensitivity.value(), 1.5904902331329802) <= 2e-3);
@@ -134,12 +134,12 @@ TEST_CASE("filters and extra delay are in the margins", "[closed form]") {
     const PidSettings s{.gain = 1.0, .integral_time = 12.0, .derivative_time = 1.0, .filter_time = 0.4, .measurement_filter_time = 0.7};
     const double numerator[] = {12.0 * 1.4, 12.4, 1.0}, denominator[] = {12.0 * 0.4 * 0.7, 12.0 * 1.1, 12.0, 0.0};
     const auto C = TransferFunction::from_polynomials(numerator, denominator);
-    const auto r = robustness(G, s, {.extra_delay_s = 0.25}), by_hand = robustness((G * C).with_dead_time(3.25));
+    const auto r = robustness(G, s, {.extra_delay = 0.25}), by_hand = robustness((G * C).with_dead_time(3.25));
     CHECK(relative_error(r.gain_margin.value(), by_hand.gain_margin.value()) <= 1e-10);
     CHECK(relative_error(r.max_sensitivity.value(), by_hand.max_sensitivity.value()) <= 1e-10);
-    CHECK(relative_error(r.delay_margin_s.value(), by_hand.delay_margin_s.value()) <= 1e-10);
-    oracle::check_refused(error_code::out_of_domain, {"extra_delay", "-1"}, [&] { robustness(G, s, {.extra_delay_s = -1.0}); });
-    oracle::check_refused(error_code::out_of_domain, {"scan_time", "0"}, [&] { robustness(G, s, {.scan_time_s = 0.0}); });
-    oracle::check_refused(error_code::not_finite, {"scan_time", "nan"}, [&] { robustness(G, s, {.scan_time_s = std::nan("")}); });
+    CHECK(relative_error(r.delay_margin.value(), by_hand.delay_margin.value()) <= 1e-10);
+    oracle::check_refused(error_code::out_of_domain, {"extra_delay", "-1"}, [&] { robustness(G, s, {.extra_delay = -1.0}); });
+    oracle::check_refused(error_code::out_of_domain, {"scan_time", "0"}, [&] { robustness(G, s, {.scan_time = 0.0}); });
+    oracle::check_refused(error_code::not_finite, {"scan_time", "nan"}, [&] { robustness(G, s, {.scan_time = std::nan("")}); });
     oracle::check_refused(error_code::out_of_domain, {"settings.gain"}, [&] { robustness(G, PidSettings{}); });
 }

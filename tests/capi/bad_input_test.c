@@ -152,7 +152,7 @@ static void sizes_and_values(void) {
     VALUE_REFUSED(form.action_as, INT32_MIN, tauw_entered_as(&settings, &form, &entered, &error));
     VALUE_REFUSED(form.has_filter_high, 5, tauw_entered_as(&settings, &form, &entered, &error));
     VALUE_REFUSED(entered.action, 2, tauw_settings_from(&entered, &form, &settings, &error));
-    VALUE_REFUSED(duty.has_scan_time_s, 3, tauw_simulate(model, &settings, &duty, 10.0, &trend, &error));
+    VALUE_REFUSED(duty.has_scan_time, 3, tauw_simulate(model, &settings, &duty, 10.0, &trend, &error));
     VALUE_REFUSED(desired.has_time_constant, 3, tauw_synthesize(model, &desired, &synthesis, &error));
     VALUE_REFUSED(request.safety_function, 3, tauw_tune(record, &request, &sheet, &error));
 

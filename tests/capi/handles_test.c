@@ -177,8 +177,8 @@ void test_handles(void) {
     tauw_pid_settings_defaults(&settings, sizeof settings);
     settings.gain = 0.1;
     tauw_duty_defaults(&duty, sizeof duty);
-    duty.has_scan_time_s = 1;
-    duty.scan_time_s = 1.0;
+    duty.has_scan_time = 1;
+    duty.scan_time = 1.0;
     tauw_desired_response_defaults(&desired, sizeof desired);
     desired.has_time_constant = 1;
     desired.time_constant = 4.0;

@@ -51,7 +51,7 @@ int main() {
     const tw::RecordColumns source = columns();
     const tw::Record record(source);
     const tw::FittedModel fit = tw::identify(record);
-    const tw::TuningRequest request{.duty = tw::Duty{.setpoint_step = 2.0, .scan_time_s = 0.5}};
+    const tw::TuningRequest request{.duty = tw::Duty{.setpoint_step = 2.0, .scan_time = 0.5}};
     const tw::TuningSheet sheet = tw::tune(record, request);
 
     tauw_error error;
@@ -76,8 +76,8 @@ int main() {
     c.output_range = &percent;
     c.process_value_range = &degrees;
     duty.setpoint_step = 2.0;
-    duty.has_scan_time_s = 1;
-    duty.scan_time_s = 0.5;
+    duty.has_scan_time = 1;
+    duty.scan_time = 0.5;
     c_request.duty = &duty;
 
     tauw_record* c_record = nullptr;

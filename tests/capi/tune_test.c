@@ -29,9 +29,9 @@ static void settings_by_the_rule(const tauw_sheet* sheet) {
     OK(tauw_sheet_summarize(sheet, &summary, &error));
     CHECK(summary.has_model == 1 && summary.has_speed == 1 && summary.has_proposed == 1);
     CHECK(summary.withheld_count == 0 && summary.has_as_found == 1 && summary.has_proposed_entered == 1);
-    CHECK_NEAR(summary.effective_dead_time_s, 4.0, 1e-6);
-    CHECK_NEAR(summary.time_constant_s, 4.0, 1e-6);
-    CHECK(summary.half_scan_s == 0.5 && summary.measurement_filter_time_s == 0.0);
+    CHECK_NEAR(summary.effective_dead_time, 4.0, 1e-6);
+    CHECK_NEAR(summary.time_constant, 4.0, 1e-6);
+    CHECK(summary.half_scan == 0.5 && summary.measurement_filter_time == 0.0);
     OK(tauw_sheet_settings(sheet, TAUW_SHEET_PROPOSED, &settings, &error));
     OK(tauw_sheet_entered(sheet, TAUW_SHEET_PROPOSED, &entered, &error));
     /* 100 / 0.625 = 160 %, 60 / 10 = 6 repeats per minute. */
@@ -136,8 +136,8 @@ static void proposal(void) {
     as_found.proportional_band = 300.0;
     as_found.has_repeats = 1;
     as_found.repeats = 4.0;
-    duty.has_scan_time_s = 1;
-    duty.scan_time_s = 1.0;
+    duty.has_scan_time = 1;
+    duty.scan_time = 1.0;
     duty.setpoint_step = 5.0;
     request.form = &form;
     request.as_found = &as_found;

@@ -38,7 +38,6 @@ constexpr Pinned pinned[] = {
     {"action_would_be_lost", 41},
     {"outside_field_limits", 42},
     {"safety_function", 50},
-    {"not_converged", 60},
     {"schema_unsupported", 70},
     {"out_of_memory", 90},
     {"internal", 99},

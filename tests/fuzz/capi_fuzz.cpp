@@ -220,8 +220,8 @@ void work(Bytes& in, Handles& h, tauw_error& error, int what) {
         require(tauw_trend_destroy(&h.trend) == TAUW_OK);
         const tauw_pid_settings settings = in.filled(tauw_pid_settings_defaults);
         tauw_duty duty = in.filled(tauw_duty_defaults);
-        duty.has_scan_time_s = 1;
-        duty.scan_time_s = 1.0;
+        duty.has_scan_time = 1;
+        duty.scan_time = 1.0;
         const double horizon = in.byte();
         settle(tauw_simulate(h.model, &settings, &duty, horizon, &h.trend, &error), error, h.trend, true);
     } else {
@@ -229,8 +229,8 @@ void work(Bytes& in, Handles& h, tauw_error& error, int what) {
         tauw_tuning_request request = in.filled(tauw_tuning_request_defaults);
         // A long scan time keeps the trends of a sheet short.
         tauw_duty duty = in.filled(tauw_duty_defaults);
-        duty.has_scan_time_s = 1;
-        duty.scan_time_s = 1.0;
+        duty.has_scan_time = 1;
+        duty.scan_time = 1.0;
         request.form = nullptr;
         request.as_found = nullptr;
         request.identify = nullptr;

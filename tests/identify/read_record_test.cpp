@@ -91,6 +91,10 @@ TEST_CASE("malformed text is refused with line and remedy", "[closed form]") {
         {"open quote", head + "\"2026-03-01T08:00:00Z,1,2\n", file_malformed, "not closed"},
         {"text after a quote", head + "\"2026\"x,1,2\n", file_malformed, "follows a closing quote"},
         {"reversed range", "# output_range: 100 0 %\n" + head + row, out_of_domain, "output_range.high is 0"},
+        {"range twice", "# output_range: 0 100 %\n# output_range: 0 50 %\n" + head + row, conflicting_arguments, "stands twice"},
+        {"range without colon", "# output_range 0 100 %\n" + head + row, file_malformed, "has no colon"},
+        {"two signs", head + "2026-03-01T08:00:00Z,+-5,1\n", file_malformed, "output is '+-5'"},
+        {"beyond plant history", head + "1700-03-01T08:00:00Z,5,1\n", file_malformed, "RFC 3339"},
         {"range of words", "# output_range: low high\n" + head + row, file_malformed, "where a number belongs"},
     };
     for (const BadText& bad : cases) {

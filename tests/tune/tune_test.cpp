@@ -42,13 +42,13 @@ TEST_CASE("self-regulating defaults", "[closed form]") {
     truth.move_times = {40, 640, 1240, 1840};
     truth.duration = 2400;
     truth.samples = 2400;
-    const TuningSheet sheet = tune(ranged_record(truth), {.duty = Duty{.scan_time_s = 0.5}});
+    const TuningSheet sheet = tune(ranged_record(truth), {.duty = Duty{.scan_time = 0.5}});
     REQUIRE(sheet.proposed);
     const FittedModel& fit = sheet.fit;
     const double D = fit.dead_time + 0.25;
     const double tau_c = std::max({D, 0.1 * fit.lags[0], 1.5, 2.0 * fit.standard_error("dead_time").value()});
-    CHECK(sheet.speed->effective_dead_time_s == Approx(D).epsilon(1e-14));
-    CHECK(sheet.speed->time_constant_s == Approx(tau_c).epsilon(1e-14));
+    CHECK(sheet.speed->effective_dead_time == Approx(D).epsilon(1e-14));
+    CHECK(sheet.speed->time_constant == Approx(tau_c).epsilon(1e-14));
     CHECK(sheet.proposed->settings.gain == Approx(fit.lags[0] / (fit.gain / 2.0 * (tau_c + D))).epsilon(1e-12));
     CHECK(*sheet.proposed->settings.integral_time == Approx(std::min(fit.lags[0], 4.0 * (tau_c + D))).epsilon(1e-12));
     CHECK(sheet.model->gain() == Approx(fit.gain / 2.0).epsilon(1e-15));  // 100 % / 200 degC
@@ -57,10 +57,10 @@ TEST_CASE("self-regulating defaults", "[closed form]") {
 
 // Kc = (2 tau_c + D)/(k (tau_c + D)^2), Ti = 2 tau_c + D: IMC table, integrating row (Rivera, Morari, Skogestad 1986).
 TEST_CASE("integrating defaults", "[closed form]") {
-    const TuningSheet sheet = tune(ranged_record({.lag = 0.0, .noise = 0.05}), {.duty = Duty{.scan_time_s = 0.5}});
+    const TuningSheet sheet = tune(ranged_record({.lag = 0.0, .noise = 0.05}), {.duty = Duty{.scan_time = 0.5}});
     REQUIRE(sheet.proposed);
     const double D = sheet.fit.dead_time + 0.25, tau_c = std::max(3.0 * D, 1.5), k = sheet.fit.gain / 2.0;
-    CHECK(sheet.speed->time_constant_s == Approx(tau_c).epsilon(1e-14));
+    CHECK(sheet.speed->time_constant == Approx(tau_c).epsilon(1e-14));
     CHECK(sheet.proposed->settings.gain == Approx((2 * tau_c + D) / (k * (tau_c + D) * (tau_c + D))).epsilon(1e-12));
     CHECK(*sheet.proposed->settings.integral_time == Approx(2 * tau_c + D).epsilon(1e-12));
 }
@@ -70,14 +70,14 @@ TEST_CASE("margins are those of the rounded numbers, with scan and filters", "[i
         tune(ranged_record(), {.form = ControllerForm{.gain_as = GainAs::proportional_band, .integral_as = IntegralAs::repeats,
                                                       .integral_unit = TimeUnit::minutes, .gain_resolution = 1.0,
                                                       .integral_resolution = 0.1},
-                               .duty = Duty{.scan_time_s = 1.0},
+                               .duty = Duty{.scan_time = 1.0},
                                .as_found = Entered{.proportional_band = 200.0, .repeats = 2.0, .measurement_filter_time = 2.0}});
     REQUIRE(sheet.proposed);
     CHECK(std::round(*sheet.proposed->entered->proportional_band) == *sheet.proposed->entered->proportional_band);
     CHECK(sheet.proposed->settings == settings_from(*sheet.proposed->entered, *sheet.form));
     CHECK(sheet.proposed->settings.measurement_filter_time == 2.0);
-    CHECK(sheet.speed->effective_dead_time_s == Approx(sheet.fit.dead_time + 0.5 + 2.0));
-    CHECK(sheet.proposed->margins == robustness(*sheet.model, sheet.proposed->settings, {.scan_time_s = 1.0}));
+    CHECK(sheet.speed->effective_dead_time == Approx(sheet.fit.dead_time + 0.5 + 2.0));
+    CHECK(sheet.proposed->margins == robustness(*sheet.model, sheet.proposed->settings, {.scan_time = 1.0}));
     REQUIRE(sheet.as_found);
     CHECK(sheet.as_found->settings.gain == 0.5);
     CHECK(*sheet.as_found->settings.integral_time == 30.0);
@@ -119,7 +119,7 @@ TEST_CASE("what is asked wrongly is refused", "[closed form]") {
     CHECK(code_of(bare, {.form = seconds_form()}) == error_code::missing_range);
     CHECK(code_of(bare, {.as_found = Entered{.gain = 1.0, .integral_time = 10.0}}) == error_code::missing_argument);
     CHECK(code_of(ranged, {.time_constant = 0.0}) == error_code::out_of_domain);
-    CHECK(code_of(ranged, {.duty = Duty{.scan_time_s = -1.0}}) == error_code::out_of_domain);
+    CHECK(code_of(ranged, {.duty = Duty{.scan_time = -1.0}}) == error_code::out_of_domain);
     ControllerForm other = seconds_form();
     other.process_value_range = Range{.low = 0.0, .high = 100.0, .unit = "degC"};
     CHECK(code_of(ranged, {.form = other}) == error_code::conflicting_arguments);
@@ -137,6 +137,38 @@ TEST_CASE("without ranges the sheet stays in the record's units and says so", "[
     CHECK_FALSE(sheet.proposed->figures);
 }
 
+TEST_CASE("no speed that follows from the model is a reason, not an error", "[closed form]") {
+    const TuningSheet sheet = tune(ranged_record({.lag = 0.0, .noise = 0.05}), {.identify = {.fixed = {.dead_time = 0.0}}});
+    CHECK_FALSE(sheet.proposed);
+    CHECK_THAT(sheet.withheld.at(0), ContainsSubstring("no closed-loop time constant follows"));
+}
+
+TEST_CASE("the record's ranges serve a form in engineering units", "[closed form]") {
+    ControllerForm form = seconds_form();
+    form.gain_unit = GainUnit::engineering;
+    const TuningSheet sheet = tune(ranged_record({.noise = 0.05}), {.form = form});
+    REQUIRE(sheet.proposed);
+    // 100 % of output over 200 degC: half the number per degC (trade-facts A13).
+    CHECK(*sheet.proposed->entered->gain == Approx(0.5 * sheet.proposed->settings.gain).epsilon(1e-12));
+}
+
+TEST_CASE("as-found numbers that the model calls unstable are questioned", "[closed form]") {
+    const TuningSheet sheet = tune(ranged_record({.noise = 0.05}), {.form = seconds_form(), .duty = Duty{.setpoint_step = 2.0, .scan_time = 0.5},
+                                                                    .as_found = Entered{.gain = 40.0, .integral_time = 5.0}});
+    REQUIRE(sheet.as_found);
+    CHECK(sheet.as_found->margins.verdict == Verdict::unstable);
+    CHECK_FALSE(sheet.as_found->figures);
+    CHECK_THAT(sheet.text(), ContainsSubstring("would not be stable on this"));
+}
+
+TEST_CASE("an integral time limited for loads is said, and the slow pole with it is not", "[closed form]") {
+    const TuningSheet sheet = tune(ranged_record({.lag = 60.0, .noise = 0.02, .move_times = {40, 640, 1240, 1840}, .duration = 2400, .samples = 2400}));
+    REQUIRE(sheet.proposed);
+    CHECK(sheet.speed->integral_time_limited);
+    CHECK_THAT(sheet.text(), ContainsSubstring("limited to 4 (time constant"));
+    for (const Obstacle& o : sheet.obstacles) CHECK(o.code != ObstacleCode::slow_pole_cancelled);
+}
+
 TEST_CASE("the standing cautions come first and in order", "[closed form]") {
     const TuningSheet sheet = tune(ranged_record());
     const char* const first_words[] = {"Advice, not authority.", "Not for safety functions.", "Change control.",
@@ -147,8 +179,8 @@ TEST_CASE("the standing cautions come first and in order", "[closed form]") {
 
 TEST_CASE("a sheet survives JSON to the last bit", "[invariant]") {
     const std::vector<TuningSheet> sheets = {
-        tune(ranged_record(), {.form = seconds_form(), .duty = Duty{.setpoint_step = 4.0, .load_step = 2.0, .load_time_s = 60.0,
-                                                                     .scan_time_s = 0.5},
+        tune(ranged_record(), {.form = seconds_form(), .duty = Duty{.setpoint_step = 4.0, .load_step = 2.0, .load_time = 60.0,
+                                                                     .scan_time = 0.5},
                                .as_found = Entered{.gain = 0.3, .integral_time = 40.0}, .loop_name = "TIC \"1\" \xC2\xB0"}),
         tune(ranged_record({.move_times = {}, .move_sizes = {}})), tune(simulated::record({}, 2)),
         tune(ranged_record({.lag = 0.0, .noise = 0.05}))};
@@ -186,5 +218,7 @@ TEST_CASE("documents that are no sheet are refused with the place", "[closed for
     CHECK_THAT(changed("\"schema_version\": 1", "\"schema_version\": 2"), Catch::Matchers::StartsWith("schema_unsupported"));
     CHECK_THAT(changed("\"r_squared\"", "\"r_squares\""), ContainsSubstring("/fit/r_squared is missing"));
     CHECK_THAT(changed("\"first_order_plus_dead_time\"", "\"tenth_order\""), ContainsSubstring("/fit/form is not one of the words"));
+    CHECK_THAT(changed("\n    \"lags_s\": [\n      ", "\n    \"lags_s\": [], \"unused\": [\n      "), ContainsSubstring("/fit/lags_s does not belong"));
+    CHECK_THAT(changed("\"zeros_at_origin\": 0", "\"zeros_at_origin\": -1"), ContainsSubstring("impossible value"));
     CHECK_THAT(changed("\"samples_used\": 1000", "\"samples_used\": -3"), ContainsSubstring("not a whole number"));
 }

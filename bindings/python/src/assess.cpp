@@ -17,7 +17,7 @@ Robustness robustness_of(const tw::TransferFunction& process, const tw::PidSetti
                             " is given without settings; an open loop is taken as it is: put the dead time into it");
     const py::gil_scoped_release released;
     if (settings == nullptr) return tw::robustness(process);
-    return tw::robustness(process, *settings, {.scan_time_s = scan_time, .extra_delay_s = extra_delay});
+    return tw::robustness(process, *settings, {.scan_time = scan_time, .extra_delay = extra_delay});
 }
 
 std::string optional_text(const std::optional<double>& x) { return x ? short_text(*x) : "None"; }
@@ -27,7 +27,7 @@ std::string text_of(const Robustness& r) {
         .add("verdict", tw::name_of(r.verdict))
         .add("gain_margin", optional_text(r.gain_margin))
         .add("phase_margin", optional_text(r.phase_margin_deg), "deg")
-        .add("delay_margin", optional_text(r.delay_margin_s), "s")
+        .add("delay_margin", optional_text(r.delay_margin), "s")
         .add("max_sensitivity", optional_text(r.max_sensitivity))
         .add("max_complementary_sensitivity", optional_text(r.max_complementary_sensitivity))
         .done();
@@ -37,11 +37,11 @@ void bind_robustness(py::module_& m) {
     py::class_<tw::GainCrossover>(m, "GainCrossover", "A frequency at which the open loop has gain 1.")
         .def_readonly("frequency_rad_s", &tw::GainCrossover::frequency_rad_s)
         .def_readonly("phase_margin_deg", &tw::GainCrossover::phase_margin_deg, "angle from -1, whichever direction")
-        .def_readonly("delay_margin", &tw::GainCrossover::delay_margin_s,
+        .def_readonly("delay_margin", &tw::GainCrossover::delay_margin,
                       "s, dead time that would bring the loop through -1 here")
         .def("__repr__", [](const tw::GainCrossover& c) {
             return Line("GainCrossover").add("frequency", short_text(c.frequency_rad_s), "rad/s")
-                .add("phase_margin", short_text(c.phase_margin_deg), "deg").add("delay_margin", short_text(c.delay_margin_s), "s").done();
+                .add("phase_margin", short_text(c.phase_margin_deg), "deg").add("delay_margin", short_text(c.delay_margin), "s").done();
         });
     py::class_<tw::PhaseCrossover>(m, "PhaseCrossover", "A frequency at which the open loop is real and negative.")
         .def_readonly("frequency_rad_s", &tw::PhaseCrossover::frequency_rad_s)
@@ -61,7 +61,7 @@ void bind_robustness(py::module_& m) {
         .def_readonly("gain_margin", &Robustness::gain_margin, "smallest factor above 1 that destabilizes")
         .def_readonly("gain_reduction_margin", &Robustness::gain_reduction_margin, "largest factor below 1 that destabilizes")
         .def_readonly("phase_margin_deg", &Robustness::phase_margin_deg, "smallest angle from -1 over all gain crossovers")
-        .def_readonly("delay_margin", &Robustness::delay_margin_s, "s, smallest dead time that destabilizes")
+        .def_readonly("delay_margin", &Robustness::delay_margin, "s, smallest dead time that destabilizes")
         .def_readonly("max_sensitivity", &Robustness::max_sensitivity, "Ms, the largest |1/(1 + L)|")
         .def_readonly("max_sensitivity_frequency", &Robustness::max_sensitivity_frequency, "rad/s")
         .def_readonly("max_complementary_sensitivity", &Robustness::max_complementary_sensitivity, "Mt, the largest |L/(1 + L)|")
@@ -81,9 +81,9 @@ std::string text_of(const Duty& d) {
     return Line("Duty")
         .unless(0.0, "setpoint_step", d.setpoint_step)
         .unless(0.0, "load_step", d.load_step)
-        .unless(0.0, "load_time", d.load_time_s, "s")
+        .unless(0.0, "load_time", d.load_time, "s")
         .unless(0.0, "noise", d.noise)
-        .add("scan_time", d.scan_time_s, "s")
+        .add("scan_time", d.scan_time, "s")
         .add("output", tw::text_of(d.output_low) + " to " + tw::text_of(d.output_high))
         .add("rest_output", d.rest_output)
         .add("rest_process_value", d.rest_process_value)
@@ -103,10 +103,10 @@ void bind_simulation(py::module_& m) {
                          std::optional<double> rest_output, std::optional<double> rest_process_value) {
                  const Duty duty{.setpoint_step = setpoint_step,
                                  .load_step = load_step,
-                                 .load_time_s = load_time,
+                                 .load_time = load_time,
                                  .noise = noise,
                                  .seed = seed,
-                                 .scan_time_s = scan_time,
+                                 .scan_time = scan_time,
                                  .output_low = output_low,
                                  .output_high = output_high,
                                  .rest_output = rest_output,
@@ -119,10 +119,10 @@ void bind_simulation(py::module_& m) {
              "rest_process_value"_a = py::none())
         .def_readonly("setpoint_step", &Duty::setpoint_step)
         .def_readonly("load_step", &Duty::load_step)
-        .def_readonly("load_time", &Duty::load_time_s, "s")
+        .def_readonly("load_time", &Duty::load_time, "s")
         .def_readonly("noise", &Duty::noise)
         .def_readonly("seed", &Duty::seed)
-        .def_readonly("scan_time", &Duty::scan_time_s, "s")
+        .def_readonly("scan_time", &Duty::scan_time, "s")
         .def_readonly("output_low", &Duty::output_low)
         .def_readonly("output_high", &Duty::output_high)
         .def_readonly("rest_output", &Duty::rest_output)
@@ -152,7 +152,7 @@ void bind_simulation(py::module_& m) {
 
     py::class_<Figures>(m, "Figures", "Figures of a trend. Times count from the step.")
         .def_readonly("overshoot_percent", &Figures::overshoot_percent, "of the set-point step; None without one")
-        .def_readonly("settling_time", &Figures::settling_time_s,
+        .def_readonly("settling_time", &Figures::settling_time,
                       "s until it stays within 2 % of the set-point step; None where it does not within the horizon")
         .def_readonly("peak_load_error", &Figures::peak_load_error, "largest |error| after the load step; None without one")
         .def_readonly("integrated_absolute_error", &Figures::integrated_absolute_error, "process value times s")
@@ -161,7 +161,7 @@ void bind_simulation(py::module_& m) {
         .def("__repr__", [](const Figures& f) {
             return Line("Figures")
                 .add("overshoot", optional_text(f.overshoot_percent), "%")
-                .add("settling_time", optional_text(f.settling_time_s), "s")
+                .add("settling_time", optional_text(f.settling_time), "s")
                 .add("peak_load_error", optional_text(f.peak_load_error))
                 .add("integrated_absolute_error", short_text(f.integrated_absolute_error))
                 .add("valve_travel", short_text(f.valve_travel))

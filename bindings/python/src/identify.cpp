@@ -176,6 +176,16 @@ void bind_fit(py::module_& m) {
         .def_readonly("residual_rms", &FittedModel::residual_rms, "root of sum_of_squares / samples_used")
         .def_readonly("noise", &FittedModel::noise, "root of sum_of_squares / degrees of freedom")
         .def_readonly("r_squared", &FittedModel::r_squared)
+        .def_readonly("residual_correlation", &FittedModel::residual_correlation,
+                      "of neighboring residuals; the standard errors are widened for it")
+        .def_readonly("response_to_noise", &FittedModel::response_to_noise, "largest excursion of the response in units of noise")
+        .def_property_readonly(
+            "tested_output", [](const FittedModel& f) { return py::make_tuple(f.tested_output.low, f.tested_output.high); },
+            "lowest and highest output of the record")
+        .def_property_readonly(
+            "tested_process_value",
+            [](const FittedModel& f) { return py::make_tuple(f.tested_process_value.low, f.tested_process_value.high); },
+            "lowest and highest process value among the samples used")
         .def_readonly("samples_used", &FittedModel::samples_used)
         .def_property_readonly("moves", [](const FittedModel& f) { return py::tuple(py::cast(f.moves)); })
         .def_property_readonly("findings", [](const FittedModel& f) { return py::tuple(py::cast(f.findings)); })

@@ -76,20 +76,22 @@ void bind_sheet(py::module_& m) {
     using S = TuningSheet;
     using C = SheetController;
     py::class_<tw::SpeedChoice>(m, "SpeedChoice", "How fast the loop was asked to be, and why. Times in seconds.")
-        .def_readonly("time_constant", &tw::SpeedChoice::time_constant_s, "s")
+        .def_readonly("time_constant", &tw::SpeedChoice::time_constant, "s")
         .def_readonly("reason", &tw::SpeedChoice::reason)
-        .def_readonly("effective_dead_time", &tw::SpeedChoice::effective_dead_time_s,
+        .def_readonly("effective_dead_time", &tw::SpeedChoice::effective_dead_time,
                       "s: dead time + half a scan + measurement filter")
-        .def_readonly("half_scan", &tw::SpeedChoice::half_scan_s, "s")
-        .def_readonly("measurement_filter_time", &tw::SpeedChoice::measurement_filter_time_s, "s")
+        .def_readonly("half_scan", &tw::SpeedChoice::half_scan, "s")
+        .def_readonly("integral_time_limited", &tw::SpeedChoice::integral_time_limited,
+                      "to 4 (time_constant + effective_dead_time), so that loads do not drag")
+        .def_readonly("measurement_filter_time", &tw::SpeedChoice::measurement_filter_time, "s")
         .def("__repr__", [](const tw::SpeedChoice& s) {
-            return Line("SpeedChoice").add("time_constant", short_text(s.time_constant_s), "s").add("reason", s.reason)
-                .add("effective_dead_time", short_text(s.effective_dead_time_s), "s").done();
+            return Line("SpeedChoice").add("time_constant", short_text(s.time_constant), "s").add("reason", s.reason)
+                .add("effective_dead_time", short_text(s.effective_dead_time), "s").done();
         });
     py::class_<S>(m, "TuningSheet", "The record of a tuning: what was seen, what was decided, what to key in, how to go back.")
         .def("text", [](const S& s) { return shown(s.text()); }, "Plain text of 78 columns.")
-        .def("json", &S::json, "JSON, schema tauwright-tuning-sheet version 1; from_json reads it back.")
-        .def_static("from_json", [](std::string_view json) { return S::from_json(json); }, "json"_a, "Reads what json() wrote.")
+        .def("json", &S::json, py::call_guard<py::gil_scoped_release>(), "JSON, schema tauwright-tuning-sheet version 1; from_json reads it back.")
+        .def_static("from_json", [](std::string_view json) { return S::from_json(json); }, "json"_a, py::call_guard<py::gil_scoped_release>(), "Reads what json() wrote.")
         .def_readonly("library_version", &S::library_version)
         .def_readonly("loop_name", &S::loop_name)
         .def_property_readonly("source", [](const S& s) { return shown(s.source); }, "the record's file, or '' for arrays")
@@ -144,7 +146,14 @@ void bind_tune(py::module_& m) {
           "record"_a, "request"_a = py::none(),
           "Record in, TuningSheet out. Settings are withheld, with the reasons, where the record or the margins advise it.");
     m.def("differences",
-          [](const TuningSheet& earlier, const TuningSheet& later) { return py::tuple(py::cast(tw::differences(earlier, later))); },
+          [](const TuningSheet& earlier, const TuningSheet& later) {
+              std::vector<tw::SheetDifference> found;
+              {
+                  const py::gil_scoped_release released;
+                  found = tw::differences(earlier, later);
+              }
+              return py::tuple(py::cast(found));
+          },
           "earlier"_a, "later"_a, "Everything that differs between two sheets, in the order of the document.");
 }
 

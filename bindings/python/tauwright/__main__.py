@@ -45,7 +45,7 @@ def main(argv: list[str] | None = None) -> int:
         sys.stdout.reconfigure(errors="replace")
     try:
         paths = _run(arguments.record, arguments.request, Path(arguments.out))
-    except (tw.Error, RequestError) as problem:
+    except tw.Error as problem:
         print(f"tauwright: {problem}", file=sys.stderr)
         return 2
     except OSError as problem:

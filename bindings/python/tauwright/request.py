@@ -57,8 +57,11 @@ _REQUEST = {
 }
 
 
-class RequestError(ValueError):
+class RequestError(tw.Error):
     """A request that is not what it should be; the message names the key, the value and the remedy."""
+
+    code = "file_malformed"
+    value = 31
 
 
 def _is_number(value: object) -> bool:

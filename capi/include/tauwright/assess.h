@@ -21,9 +21,9 @@ enum tauw_verdict {
 /* What stands between process and controller besides themselves. Default: nothing. */
 typedef struct tauw_robustness_options {
     uint32_t struct_size;
-    int32_t has_scan_time_s;
-    double scan_time_s;   /* > 0; half of it stands in for sampling and hold as dead time */
-    double extra_delay_s; /* >= 0; dead time added to the loop */
+    int32_t has_scan_time;
+    double scan_time;   /* > 0; half of it stands in for sampling and hold as dead time */
+    double extra_delay; /* >= 0; dead time added to the loop */
 } tauw_robustness_options;
 
 /* What the open loop L says of the closed loop. Margins that nothing limits are infinite
@@ -39,7 +39,7 @@ typedef struct tauw_robustness {
     int32_t has_gain_margin;
     int32_t has_gain_reduction_margin;
     int32_t has_phase_margin_deg;
-    int32_t has_delay_margin_s;
+    int32_t has_delay_margin;
     int32_t has_max_sensitivity;
     int32_t has_max_sensitivity_frequency;
     int32_t has_max_complementary_sensitivity;
@@ -47,7 +47,7 @@ typedef struct tauw_robustness {
     double gain_margin;           /* smallest factor above 1 that destabilizes */
     double gain_reduction_margin; /* largest factor below 1 that destabilizes */
     double phase_margin_deg;      /* smallest angle from -1 over all gain crossovers */
-    double delay_margin_s;        /* smallest dead time that destabilizes */
+    double delay_margin;        /* smallest dead time that destabilizes */
     double max_sensitivity;       /* Ms = max |1/(1 + L)|, at least 1 */
     double max_sensitivity_frequency;               /* rad/s; infinite where only a limit */
     double max_complementary_sensitivity;           /* Mt = max |L/(1 + L)| */
@@ -58,11 +58,11 @@ typedef struct tauw_robustness {
  * percent of span unless said otherwise. */
 typedef struct tauw_duty {
     uint32_t struct_size;
-    int32_t has_scan_time_s;
-    double scan_time_s;   /* > 0 */
+    int32_t has_scan_time;
+    double scan_time;   /* > 0 */
     double setpoint_step; /* at time 0 */
-    double load_step;     /* at the process input, from load_time_s on */
-    double load_time_s;
+    double load_step;     /* at the process input, from load_time on */
+    double load_time;
     double noise;       /* standard deviation of the measurement noise */
     uint64_t seed;      /* of the noise; equal seeds give equal trends; default 1 */
     double output_low;  /* limits of the controller output; default 0 */
@@ -77,10 +77,10 @@ typedef struct tauw_duty {
 typedef struct tauw_figures {
     uint32_t struct_size;
     int32_t has_overshoot_percent; /* 0 without a set-point step */
-    int32_t has_settling_time_s;   /* 0 where it does not settle within the horizon */
+    int32_t has_settling_time;   /* 0 where it does not settle within the horizon */
     int32_t has_peak_load_error;   /* 0 without a load step */
     double overshoot_percent;      /* of the set-point step */
-    double settling_time_s;        /* until it stays within 2 % of the set-point step */
+    double settling_time;        /* until it stays within 2 % of the set-point step */
     double peak_load_error;        /* largest |error| after the load step */
     double integrated_absolute_error; /* unit of the process value times s */
     double valve_travel;              /* sum of |output changes|, from the rest output on */

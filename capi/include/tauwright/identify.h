@@ -38,7 +38,8 @@ enum tauw_finding_code {
     TAUW_FINDING_OUTPUT_CLIPPED = 5,
     TAUW_FINDING_BAD_SAMPLES_LEFT_OUT = 6,
     TAUW_FINDING_OUTPUT_MOVED_BY_CONTROLLER = 7,
-    TAUW_FINDING_GAIN_DIFFERS = 8
+    TAUW_FINDING_GAIN_DIFFERS = 8,
+    TAUW_FINDING_MODEL_DOES_NOT_FIT = 9
 };
 
 /* The arrays of a record, all of length n. NULL for an optional one means not known. */
@@ -90,6 +91,10 @@ typedef struct tauw_fit_summary {
     double residual_rms;   /* root of sum_of_squares / samples_used */
     double noise;          /* root of sum_of_squares / degrees of freedom */
     double r_squared;
+    double residual_correlation; /* of neighboring residuals; 0 where they are independent */
+    double response_to_noise;    /* largest excursion of the response in units of noise */
+    double tested_output_low, tested_output_high; /* of the record */
+    double tested_process_value_low, tested_process_value_high; /* among the samples used */
     size_t samples_used;
     size_t lag_count;
     size_t parameter_count; /* of the covariance */

@@ -58,10 +58,10 @@ typedef struct tauw_sheet_summary {
     int32_t has_proposed; /* 0 when settings are withheld */
     int32_t has_proposed_entered;
     int32_t has_proposed_figures;
-    double time_constant_s;
-    double effective_dead_time_s; /* dead time + half a scan + measurement filter */
-    double half_scan_s;
-    double measurement_filter_time_s;
+    double time_constant;
+    double effective_dead_time; /* dead time + half a scan + measurement filter */
+    double half_scan;
+    double measurement_filter_time;
     size_t finding_count;
     size_t obstacle_count;
     size_t withheld_count;

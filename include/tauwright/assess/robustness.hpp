@@ -27,7 +27,7 @@ constexpr const char* name_of(Verdict verdict) noexcept {
 struct GainCrossover {
     double frequency_rad_s = 0.0;
     double phase_margin_deg = 0.0;  ///< angle from -1, 0 to 180, whichever direction
-    double delay_margin_s = 0.0;    ///< dead time that would bring the loop through -1 here
+    double delay_margin = 0.0;    ///< dead time that would bring the loop through -1 here
 
     friend bool operator==(const GainCrossover&, const GainCrossover&) = default;
 };
@@ -45,11 +45,11 @@ struct PhaseCrossover {
 struct Robustness {
     Verdict verdict = Verdict::undetermined;
     std::optional<bool> stable = {};               ///< empty where undetermined
-    std::optional<int> unstable_poles = {};        ///< of the closed loop; empty where undetermined
+    std::optional<int> unstable_poles = {};        ///< of the closed loop; empty where undetermined, marginal or infinitely many
     std::optional<double> gain_margin = {};            ///< smallest factor above 1 that destabilizes; infinite for none
     std::optional<double> gain_reduction_margin = {};  ///< largest factor below 1 that destabilizes; 0 for none
     std::optional<double> phase_margin_deg = {};       ///< smallest angle from -1 over all gain crossovers; infinite for none
-    std::optional<double> delay_margin_s = {};         ///< smallest dead time that destabilizes; infinite for none
+    std::optional<double> delay_margin = {};         ///< smallest dead time that destabilizes; infinite for none
     std::optional<double> max_sensitivity = {};        ///< Ms = max |1/(1 + L)|, at least 1
     std::optional<double> max_sensitivity_frequency = {};                ///< rad/s; infinite where only a limit
     std::optional<double> max_complementary_sensitivity = {};            ///< Mt = max |L/(1 + L)|
@@ -61,8 +61,8 @@ struct Robustness {
 };
 
 struct RobustnessOptions {
-    std::optional<double> scan_time_s = {};  ///< half of it stands in for sampling and hold as dead time
-    double extra_delay_s = 0.0;              ///< dead time added to the loop
+    std::optional<double> scan_time = {};  ///< half of it stands in for sampling and hold as dead time
+    double extra_delay = 0.0;              ///< dead time added to the loop
 };
 
 /// Of an open loop as it is. Frequencies, gains and peaks to about 1e-10 relative; crossings are
@@ -72,7 +72,8 @@ struct RobustnessOptions {
 /// the imaginary axis other than at 0 give `undetermined`. Allocates.
 Robustness robustness(const TransferFunction& open_loop);
 
-/// Of process and settings, every filter included. Throws `not_finite`, `out_of_domain`, and what
+/// Of process and settings, every filter included. A zero of the process at s = 0 against integral
+/// action is `marginal`: the loop hides a pole at 0. Throws `not_finite`, `out_of_domain`, and what
 /// `require(settings)` says.
 Robustness robustness(const TransferFunction& process, const PidSettings& settings, const RobustnessOptions& options = {});
 

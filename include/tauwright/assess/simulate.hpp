@@ -16,11 +16,11 @@ inline namespace v0 {
 /// settings: percent of span unless said otherwise.
 struct Duty {
     double setpoint_step = 0.0;                   ///< at time 0
-    double load_step = 0.0;                       ///< at the process input, from `load_time_s` on
-    double load_time_s = 0.0;
+    double load_step = 0.0;                       ///< at the process input, from `load_time` on
+    double load_time = 0.0;
     double noise = 0.0;                           ///< standard deviation of the measurement noise
     std::uint64_t seed = 1;                       ///< of the noise; equal seeds give equal trends
-    std::optional<double> scan_time_s = {};
+    std::optional<double> scan_time = {};
     double output_low = 0.0, output_high = 100.0; ///< limits of the controller output
     /// Output that holds the process at rest, and the process value it rests at, where the trend
     /// starts. Empty: the middle of the output limits, and 50.
@@ -47,7 +47,7 @@ struct Trend {
 
 /// Runs the block of `settings` against the exact sampled process over `horizon_s`. Derivative and
 /// measurement filter act on the process value, the set point is weighted. Needs
-/// `duty.scan_time_s` (`missing_argument`), a named process form (`unsupported_form`), a horizon of
+/// `duty.scan_time` (`missing_argument`), a named process form (`unsupported_form`), a horizon of
 /// at least two and at most ten million scans (`out_of_domain`). Allocates the trend.
 Trend simulate(const TransferFunction& process, const PidSettings& settings, const Duty& duty, double horizon_s);
 
@@ -55,7 +55,7 @@ Trend simulate(const TransferFunction& process, const PidSettings& settings, con
 /// load step that comes later than the set-point step.
 struct Figures {
     std::optional<double> overshoot_percent = {};  ///< of the set-point step; empty without one
-    std::optional<double> settling_time_s = {};    ///< until it stays within 2 % of the set-point step; empty where it does not within the horizon
+    std::optional<double> settling_time = {};    ///< until it stays within 2 % of the set-point step; empty where it does not within the horizon
     std::optional<double> peak_load_error = {};    ///< largest |error| after the load step; empty without one
     double integrated_absolute_error = 0.0;        ///< IAE, unit of the process value times s
     double valve_travel = 0.0;                     ///< sum of |output changes|, from the rest output on

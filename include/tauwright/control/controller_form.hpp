@@ -96,7 +96,7 @@ struct Entered {
     std::optional<double> filter_ratio = {};
     double measurement_filter_time = 0.0;          ///< seconds
     double setpoint_weight = 1.0;
-    Action action = Action::reverse;
+    Action action = Action::reverse;               ///< stays reverse where the sign of the gain is the direction
 
     friend bool operator==(const Entered&, const Entered&) = default;
 };

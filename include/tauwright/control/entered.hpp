@@ -45,6 +45,7 @@ inline SeriesSettings series_from(const PidSettings& s) {
 /// Throws `no_equivalent` where the filter outweighs the lead, so that Ti or Td would not be positive.
 inline PidSettings ideal_from(const SeriesSettings& series) {
     const double Td = series.derivative_time, Tf = Td == 0.0 ? 0.0 : series.filter_time;
+    if (std::abs(Td - Tf) <= 1e-14 * Tf) return {.gain = series.gain, .integral_time = series.integral_time};
     PidSettings ideal{.gain = series.gain, .integral_time = series.integral_time, .filter_time = Tf};
     if (Td > 0.0 && series.integral_time) {
         const double Ti = *series.integral_time + Td - Tf;
@@ -148,7 +149,8 @@ inline void enter_derivative(Entered& e, const ControllerForm& form, double time
 }  // namespace detail
 
 /// The numbers to key in for `settings` (gain in percent per percent, times in seconds), rounded to
-/// the form's display. Exact up to that rounding. Throws `no_equivalent`, `action_would_be_lost`,
+/// the form's display. Exact up to that rounding. A form whose proportional action looks at the process
+/// value has set-point weight 0. Does not allocate but for errors. Throws `no_equivalent`, `action_would_be_lost`,
 /// `outside_field_limits`, `missing_range` with the field, the value and the remedy.
 inline Entered entered_as(const PidSettings& settings, const ControllerForm& form) {
     require(settings);
@@ -157,7 +159,9 @@ inline Entered entered_as(const PidSettings& settings, const ControllerForm& for
     e.measurement_filter_time = settings.measurement_filter_time;
     e.setpoint_weight = form.proportional_on == ActsOn::process_value ? 0.0 : settings.setpoint_weight;
     const double ki = settings.integral_gain_per_s();
-    e.action = (settings.gain != 0.0 ? settings.gain : ki) > 0.0 ? Action::reverse : Action::direct;
+    // Where the sign of the gain is the direction, a switch beside it stays on reverse.
+    if (form.action_as == ActionAs::action_switch)
+        e.action = (settings.gain != 0.0 ? settings.gain : ki) > 0.0 ? Action::reverse : Action::direct;
     if (settings.gain == 0.0 && (form.equation != Equation::parallel || form.gain_as == GainAs::proportional_band ||
                                  form.integral_as != IntegralAs::gain))
         throw Error(error_code::no_equivalent,
@@ -230,6 +234,10 @@ inline void refuse_foreign(const Entered& e, const ControllerForm& form) {
 inline PidSettings settings_from(const Entered& e, const ControllerForm& form) {
     check(form);
     detail::refuse_foreign(e, form);
+    if (form.action_as == ActionAs::sign && e.action == Action::direct)
+        throw Error(error_code::conflicting_arguments,
+                    "entered.action is direct, but this form's direction is the sign of the gain; give the gain its sign and leave "
+                    "action on reverse");
     const double sign = form.action_as == ActionAs::action_switch && e.action == Action::direct ? -1.0 : 1.0;
     SeriesSettings own;
     if (form.gain_as == GainAs::proportional_band) {
@@ -257,6 +265,11 @@ inline PidSettings settings_from(const Entered& e, const ControllerForm& form) {
     }
 
     const double derivative_unit = detail::seconds_in(form.derivative_unit);
+    for (const auto& number : {e.derivative_time, e.derivative_gain, e.filter_time, e.filter_ratio})
+        detail::require_not_negative("entered derivative or filter", form.action_as == ActionAs::sign ? std::abs(number.value_or(0.0)) : number.value_or(0.0));
+    if (own.gain == 0.0 && e.derivative_gain.value_or(0.0) != 0.0)
+        detail::refuse(error_code::no_equivalent, "entered.derivative_gain", *e.derivative_gain,
+                       "with gain 0 there is no PID with derivative action; give a gain, or derivative gain 0");
     if (form.equation == Equation::parallel && e.derivative_gain && own.gain != 0.0)
         own.derivative_time = sign * detail::entered_magnitude(e.derivative_gain, "derivative_gain", form) *
                               derivative_unit / detail::gain_factor(form) / own.gain;

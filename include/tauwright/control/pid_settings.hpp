@@ -2,6 +2,7 @@
 #pragma once
 
 #include <complex>
+#include <limits>
 #include <optional>
 
 #include "tauwright/core/error_code.hpp"
@@ -28,9 +29,10 @@ struct PidSettings {
         return Ti != 0.0 ? gain / Ti : integral_gain.value_or(0.0);
     }
 
-    /// Response to the error at a complex s in rad/s.
+    /// Response to the error at a complex s in rad/s; infinite at 0 with integral action.
     std::complex<double> operator()(std::complex<double> s) const noexcept {
         const double ki = integral_gain_per_s();
+        if (ki != 0.0 && s == 0.0) return {ki > 0.0 ? std::numeric_limits<double>::infinity() : -std::numeric_limits<double>::infinity(), 0.0};
         std::complex<double> value = gain;
         if (ki != 0.0) value += ki / s;
         if (derivative_time != 0.0) value += gain * derivative_time * s / (filter_time * s + 1.0);

@@ -28,6 +28,7 @@ struct Range {
 inline void check(const Range& range, std::string_view name) {
     detail::require_finite(detail::joined({name, ".low"}), range.low);
     detail::require_finite(detail::joined({name, ".high"}), range.high);
+    detail::require_finite(detail::joined({name, " span"}), range.span());
     if (!(range.low < range.high))
         detail::refuse(error_code::out_of_domain, detail::joined({name, ".high"}), range.high,
                        detail::joined({"give a high end above the low end ", text_of(range.low)}));

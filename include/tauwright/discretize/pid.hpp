@@ -23,21 +23,21 @@ constexpr double square_root(double x) noexcept {
 
 // How fast the integral gives up what exceeds a limit (common practice, no source): the integral
 // time of a PI, the geometric mean of integral and derivative time of a PID, at least one scan.
-constexpr double tracking_time_s(const PidSettings& s, double scan_time_s) noexcept {
+constexpr double tracking_time_s(const PidSettings& s, double scan_time) noexcept {
     const double Ti = s.integral_time.value_or(0.0);
     const double Tt = s.derivative_time > 0.0 ? square_root(Ti * s.derivative_time) : Ti;
-    return Tt > scan_time_s ? Tt : scan_time_s;
+    return Tt > scan_time ? Tt : scan_time;
 }
 
 }  // namespace detail
 
 /// Backward differences for integral, derivative and both filters: stable at every scan time, never
-/// ringing. `scan_time_s` > 0. On an error `coefficients` is left as it was and the code says why.
-inline error_code discretize(const PidSettings& settings, double scan_time_s, run::PidCoefficients& coefficients) noexcept {
-    if (!is_finite(scan_time_s)) return error_code::not_finite;
-    if (!(scan_time_s > 0.0)) return error_code::out_of_domain;
+/// ringing. `scan_time` > 0. On an error `coefficients` is left as it was and the code says why.
+inline error_code discretize(const PidSettings& settings, double scan_time, run::PidCoefficients& coefficients) noexcept {
+    if (!is_finite(scan_time)) return error_code::not_finite;
+    if (!(scan_time > 0.0)) return error_code::out_of_domain;
     if (const error_code code = check(settings).code; code != error_code::ok) return code;
-    const double h = scan_time_s, ki = settings.integral_gain_per_s();
+    const double h = scan_time, ki = settings.integral_gain_per_s();
     const double Tf = settings.derivative_time > 0.0 ? settings.filter_time : 0.0;
     run::PidCoefficients c;
     c.gain = settings.gain;

@@ -13,12 +13,12 @@ namespace tauwright {
 inline namespace v0 {
 
 /// As the overload that never throws, but throws `Error` naming the argument. Allocates only then.
-inline run::PidCoefficients discretize(const PidSettings& settings, double scan_time_s) {
-    detail::require_positive("scan_time", scan_time_s);
+inline run::PidCoefficients discretize(const PidSettings& settings, double scan_time) {
+    detail::require_positive("scan_time", scan_time);
     require(settings);
     run::PidCoefficients coefficients;
-    if (const error_code code = discretize(settings, scan_time_s, coefficients); code != error_code::ok)
-        detail::refuse(code, "scan_time", scan_time_s, "the settings overflow at this scan time; give another one");
+    if (const error_code code = discretize(settings, scan_time, coefficients); code != error_code::ok)
+        detail::refuse(code, "scan_time", scan_time, "the settings overflow at this scan time; give another one");
     return coefficients;
 }
 
@@ -124,10 +124,10 @@ inline TwoStates two_states(const TransferFunction& process) {
 /// Exact recursion of a named form with its input held over each scan; whole and fractional scans
 /// of dead time are exact. Relative accuracy about 1e-15. Throws `unsupported_form`, `not_finite`,
 /// `out_of_domain`. Source: Astrom and Wittenmark, Computer-Controlled Systems (sampling with delay).
-inline run::ProcessCoefficients discretize(const TransferFunction& process, double scan_time_s) {
-    detail::require_positive("scan_time", scan_time_s);
+inline run::ProcessCoefficients discretize(const TransferFunction& process, double scan_time) {
+    detail::require_positive("scan_time", scan_time);
     const detail::TwoStates system = detail::two_states(process);
-    const double scans = process.dead_time() / scan_time_s;
+    const double scans = process.dead_time() / scan_time;
     if (!(scans < 1e7))
         detail::refuse(error_code::out_of_domain, "dead_time", process.dead_time(),
                        "this is more than ten million scans; give a longer scan time");
@@ -135,7 +135,7 @@ inline run::ProcessCoefficients discretize(const TransferFunction& process, doub
     // 0.3 s at 0.1 s is three scans, whatever the last bit of the quotient says.
     if (fraction > 1.0 - 1e-9) whole += 1.0, fraction = 0.0;
     if (fraction < 1e-9) fraction = 0.0;
-    const double older = fraction * scan_time_s;
+    const double older = fraction * scan_time;
 
     run::ProcessCoefficients c;
     c.delay_scans = static_cast<std::int64_t>(whole);
@@ -143,8 +143,8 @@ inline run::ProcessCoefficients discretize(const TransferFunction& process, doub
         c.direct = process.gain();
         return c;
     }
-    const detail::HeldStep full = detail::held_step(system, scan_time_s);
-    const detail::HeldStep late = detail::held_step(system, scan_time_s - older);
+    const detail::HeldStep full = detail::held_step(system, scan_time);
+    const detail::HeldStep late = detail::held_step(system, scan_time - older);
     const detail::HeldStep early = detail::held_step(system, older);
     for (std::size_t i = 0; i < 2; ++i) {
         for (std::size_t j = 0; j < 2; ++j) c.growth[i][j] = full.growth[i][j];
@@ -152,7 +152,7 @@ inline run::ProcessCoefficients discretize(const TransferFunction& process, doub
         c.before[i] = early.input[i] + late.growth[i][0] * early.input[0] + late.growth[i][1] * early.input[1];
         c.outputs[i] = system.outputs[i];
         if (!is_finite(full.growth[i][0]) || !is_finite(full.growth[i][1]) || !is_finite(full.input[i]))
-            detail::refuse(error_code::out_of_domain, "scan_time", scan_time_s,
+            detail::refuse(error_code::out_of_domain, "scan_time", scan_time,
                            "an unstable process grows beyond all numbers within one scan; give a shorter scan time");
     }
     return c;

@@ -29,6 +29,7 @@ enum class FindingCode : std::int32_t {
     bad_samples_left_out = 6,
     output_moved_by_controller = 7,
     gain_differs = 8,
+    model_does_not_fit = 9,
 };
 
 /// The word of a code, for example "no_move".
@@ -42,6 +43,7 @@ constexpr const char* name_of(FindingCode code) noexcept {
         case FindingCode::bad_samples_left_out: return "bad_samples_left_out";
         case FindingCode::output_moved_by_controller: return "output_moved_by_controller";
         case FindingCode::gain_differs: return "gain_differs";
+        case FindingCode::model_does_not_fit: return "model_does_not_fit";
     }
     return "unknown";
 }

@@ -54,6 +54,12 @@ struct Move {
     double standard_error = 0.0;
 };
 
+/// From the lowest to the highest of something.
+struct Span {
+    double low = 0.0;
+    double high = 0.0;
+};
+
 /// A fit: process value = offset + drift + G(s) acting on (output - first output).
 struct FittedModel {
     Form form = Form::automatic;                   ///< the form chosen; `automatic` where nothing could be fitted
@@ -67,12 +73,18 @@ struct FittedModel {
     double drift_per_s2 = 0.0;
     /// The parameters fitted, of: gain or slope, lag_1, dead_time, offset, drift, curvature.
     std::vector<std::string> parameter_names = {};
-    std::vector<double> covariance = {};           ///< of the parameters in that order, row by row
+    /// Of the parameters in that order, row by row; widened by (1 + r)/(1 - r) where neighboring
+    /// residuals are correlated by r > 0, since n such samples say less than n independent ones.
+    std::vector<double> covariance = {};
     double sum_of_squares = 0.0;                   ///< of the residuals at the samples used
     double residual_rms = 0.0;                     ///< root of sum_of_squares / samples_used
     double noise = 0.0;                            ///< root of sum_of_squares / degrees of freedom
     double r_squared = 0.0;
+    double residual_correlation = 0.0;             ///< of neighboring residuals; 0 where they are independent
+    double response_to_noise = 0.0;                ///< largest excursion of the response in units of `noise`; infinite without noise
     std::size_t samples_used = 0;
+    Span tested_output = {};                       ///< lowest and highest output of the record
+    Span tested_process_value = {};                ///< lowest and highest process value among the samples used
     std::vector<Move> moves = {};
     std::vector<Finding> findings = {};
     std::string form_reason = {};                  ///< why this form, in words

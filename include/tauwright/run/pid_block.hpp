@@ -60,12 +60,7 @@ public:
     /// One scan. Never fails: a set point or process value that is not finite, or beyond 1e150 so
     /// that sums could overflow, holds the output, sets `flag_bad_input`, and the next good scan takes over from the held output without a bump.
     double step(double setpoint, double process_value) noexcept {
-        if (!usable(setpoint) || !usable(process_value)) {
-            if (mode_ == Mode::manual) output_ = manual_output_;
-            flags_ |= flag_bad_input;
-            take_over_ = true;
-            return output_;
-        }
+        if (!usable(setpoint) || !usable(process_value)) return held();
         const double sp = flushed(setpoint), raw = flushed(process_value);
         if (!has_history_ || (take_over_ && (flags_ & flag_bad_input))) {
             measured_ = lagged_ = raw;
@@ -78,13 +73,16 @@ public:
         if (mode_ == Mode::manual || take_over_) {
             // Where the output is given, the integral is what makes P + I + D equal to it.
             if (mode_ == Mode::manual) output_ = manual_output_;
-            integral_ = flushed(output_ - (P + D));
+            const double integral = output_ - (P + D);
+            if (!usable(integral)) return held();
+            integral_ = flushed(integral);
             take_over_ = false;
             flags_ = limit_flags(output_) | (mode_ == Mode::manual ? std::uint32_t{flag_manual} : 0u);
             return output_;
         }
         const double integral = integral_ + coefficients_.integral_per_scan * (sp - measured_);
         const double wanted = P + integral + D;
+        if (!usable(wanted) || !usable(integral)) return held();  // a gain beyond reason
         output_ = flushed(limited(wanted));
         integral_ = flushed(integral + coefficients_.tracking_per_scan * (output_ - wanted));
         flags_ = limit_flags(output_);
@@ -117,6 +115,13 @@ public:
     const PidCoefficients& coefficients() const noexcept { return coefficients_; }
 
 private:
+    // Keeps the output; the next scan that can be worked out takes over from it.
+    double held() noexcept {
+        if (mode_ == Mode::manual) output_ = manual_output_;
+        flags_ |= flag_bad_input;
+        take_over_ = true;
+        return output_;
+    }
     static bool usable(double x) noexcept { return is_finite(x) && x < 1e150 && x > -1e150; }
     // Numbers this small only cost time: arithmetic on denormals is many times slower.
     static double flushed(double x) noexcept { return (x < 1e-200 && x > -1e-200) ? 0.0 : x; }
@@ -144,7 +149,7 @@ private:
 /// True where this translation unit is compiled so that `step` gives the same bits everywhere: no
 /// value-changing floating-point options. Contraction cannot be seen from inside; the CMake target
 /// `tauwright::run` turns it off.
-constexpr bool gives_same_bits() noexcept {
+static constexpr bool gives_same_bits() noexcept {
 #if defined(__FAST_MATH__) || (defined(__FINITE_MATH_ONLY__) && __FINITE_MATH_ONLY__ != 0)
     return false;
 #else

@@ -26,7 +26,7 @@ struct ProcessCoefficients {
 
 /// How many doubles `ProcessBlock` needs from the caller for its delay line.
 constexpr std::size_t delay_line_length(const ProcessCoefficients& coefficients) noexcept {
-    return static_cast<std::size_t>(coefficients.delay_scans) + 2;
+    return static_cast<std::size_t>(coefficients.delay_scans > 0 ? coefficients.delay_scans : 0) + 2;
 }
 
 /// A process about its operating point: an output held at `rest_output` keeps the process value at

@@ -25,11 +25,12 @@ struct SheetController {
 
 /// How fast the loop was asked to be, and why.
 struct SpeedChoice {
-    double time_constant_s = 0.0;
+    double time_constant = 0.0;
     std::string reason = {};
-    double effective_dead_time_s = 0.0;  ///< dead time + half a scan + measurement filter
-    double half_scan_s = 0.0;
-    double measurement_filter_time_s = 0.0;
+    double effective_dead_time = 0.0;  ///< dead time + half a scan + measurement filter
+    double half_scan = 0.0;
+    double measurement_filter_time = 0.0;
+    bool integral_time_limited = false;  ///< to 4 (time constant + effective dead time), so that loads do not drag
 };
 
 /// The sheet. A value; texts and JSON are made from it alone.

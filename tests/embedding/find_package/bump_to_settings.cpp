@@ -20,7 +20,7 @@ int main(int argc, char** argv) try {
     const tw::TransferFunction process = tw::in_percent(*fit.model, *record.process_value_range(), *record.output_range());
     const tw::Synthesis answer = tw::synthesize(process, {.time_constant = 2.0 * fit.dead_time});
     const tw::PidSettings settings = answer.settings.value();
-    const tw::Robustness margins = tw::robustness(process, settings, {.scan_time_s = 1.0});
+    const tw::Robustness margins = tw::robustness(process, settings, {.scan_time = 1.0});
 
     // Run the block against the sampled process: ten scans after a set-point step.
     tw::run::PidBlock controller(tw::discretize(settings, 1.0), 0.0, 100.0, 50.0);
