@@ -14,7 +14,9 @@ if(PROJECT_IS_TOP_LEVEL)
 endif()
 if(TAUWRIGHT_SANITIZE)
   target_compile_options(tauwright_options INTERFACE
-    -fsanitize=address,undefined -fno-sanitize-recover=undefined -fno-omit-frame-pointer -g)
+    -fsanitize=address,undefined -fno-sanitize-recover=undefined -fno-omit-frame-pointer -g
+    # Under sanitizers GCC 12 loses track of std::optional.
+    $<$<COMPILE_LANG_AND_ID:CXX,GNU>:-Wno-maybe-uninitialized>)
   target_link_options(tauwright_options INTERFACE -fsanitize=address,undefined)
 endif()
 if(TAUWRIGHT_FUZZ)

@@ -48,10 +48,11 @@ std::optional<PoleCount> poles_without_dead_time(const TransferFunction& loop) {
 
 // Poles cross the axis at the gain crossings, one pair each time the dead time turns L(jw) through
 // -1: to the right where the gain falls, to the left where it rises.
+// Poles on the axis itself are not counted.
 std::optional<int> poles_followed(const LoopCurve& curve, const SweepResult& found) {
     const auto start = poles_without_dead_time(curve.loop());
     const double dead_time = curve.loop().dead_time();
-    if (!start || (dead_time == 0.0 && start->on_axis > 0)) return std::nullopt;
+    if (!start) return std::nullopt;
     int count = start->right, left_axis = 0;
     if (dead_time == 0.0) return count;
     for (double w : found.gain_crossings) {
@@ -59,7 +60,9 @@ std::optional<int> poles_followed(const LoopCurve& curve, const SweepResult& fou
         double angle = std::arg(-L0);
         if (angle < 0.0) angle += 2.0 * pi;
         if (dead_time * w <= angle) continue;
-        auto turns = static_cast<int>(std::floor((dead_time * w - angle) / (2.0 * pi))) + 1;
+        const double passed = (dead_time * w - angle) / (2.0 * pi), whole = std::round(passed);
+        const bool arriving = std::abs(passed - whole) < 1e-10 * std::max(1.0, whole);  // a pair just on the axis
+        auto turns = static_cast<int>(arriving ? whole : std::floor(passed) + 1.0);
         const bool to_the_right = curve.at(w).slope.real() < 0.0;
         if (start->on_axis > 0 && std::abs(std::arg(-L0)) < 1e-9) {  // a pair that starts on the axis
             left_axis += 2;
@@ -93,7 +96,8 @@ void decide(const LoopCurve& curve, const SweepResult& found, Robustness& r) {
     }
     if (curve.pole_on_axis()) return;
     if (found.to_minus_one.distance < 1e-9) {
-        r.verdict = Verdict::marginal;
+        const auto right = poles_followed(curve, found);
+        r.verdict = right && *right > 0 ? Verdict::unstable : Verdict::marginal;
         r.stable = false;
         return;
     }
@@ -132,6 +136,8 @@ void take_margins(const LoopCurve& curve, const SweepResult& found, Robustness& 
         phase = std::min(phase, c.phase_margin_deg);
         delay = std::min(delay, c.delay_margin);
     }
+    // Dead time turns gain that stays above 1 at high frequency into infinitely many unstable poles.
+    if (curve.relative_degree() == 0 && curve.loop().dead_time() == 0.0 && curve.at_infinity() >= 1.0) delay = 0.0;
     r.gain_margin = above;
     r.gain_reduction_margin = below;
     r.phase_margin_deg = phase;

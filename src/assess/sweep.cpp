@@ -83,7 +83,7 @@ private:
             result_.inverse_to_minus_one.distance =
                 curve_.loop().dead_time() > 0.0 ? std::abs(1.0 - 1.0 / std::abs(k)) : std::abs(1.0 + 1.0 / k);
         }
-        if (curve_.net_integrators() > 0) result_.inverse_to_minus_one = {1.0, 0.0};
+        if (curve_.net_integrators() > 0) note(1.0, 0.0, result_.inverse_to_minus_one);
         if (curve_.net_integrators() == 0) {
             const double K = curve_.loop().gain();
             note(std::abs(1.0 + K), 0.0, result_.to_minus_one);

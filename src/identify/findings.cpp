@@ -11,12 +11,7 @@ namespace detail {
 
 namespace {
 
-std::string rounded(double x, int digits = 3) {
-    if (x == 0.0 || !is_finite(x)) return text_of(x);
-    char buffer[40];
-    const auto end = std::to_chars(buffer, buffer + sizeof buffer, x, std::chars_format::general, digits);
-    return {buffer, end.ptr};
-}
+std::string rounded(double x, int digits = 3) { return text_of(x, digits); }
 
 void find_bad_samples(const Record& record, std::vector<Finding>& findings) {
     const std::size_t bad = record.size() - record.good_count();

@@ -1,6 +1,7 @@
 #include "identify/fit_data.hpp"
 
 #include <algorithm>
+#include <limits>
 #include <numeric>
 
 namespace tauwright {
@@ -38,7 +39,7 @@ FitData thinned(const FitData& data, std::size_t most) {
     std::size_t edge = 0;
     for (std::size_t i = 0; i < n;) {
         while (edge < data.edges.size() && data.edges[edge].time <= data.t[i]) ++edge;
-        const double until = edge < data.edges.size() ? data.edges[edge].time : data.span + 1.0;
+        const double until = edge < data.edges.size() ? data.edges[edge].time : std::numeric_limits<double>::infinity();
         double t = 0.0, y = 0.0;
         const std::size_t first = i;
         while (i < n && i - first < block && data.t[i] < until) {

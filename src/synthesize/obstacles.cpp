@@ -14,11 +14,7 @@ namespace {
 // Slow poles drag a load response when they outlast the loop this many times (common practice, no source).
 constexpr double slow_times = 4.0;
 
-std::string shown(double x) {
-    char buffer[40];
-    const auto end = std::to_chars(buffer, buffer + sizeof buffer, x, std::chars_format::general, 6);
-    return {buffer, end.ptr};
-}
+std::string shown(double x) { return text_of(x, 6); }
 
 // The slowest lag of the response: its closed-loop time constant.
 double time_constant_of(const TransferFunction& response) {

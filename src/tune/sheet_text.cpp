@@ -11,12 +11,7 @@ namespace {
 
 constexpr std::size_t width = 78, label_width = 26;
 
-std::string shown(double x, int digits = 5) {
-    if (!is_finite(x)) return "unknown";
-    char buffer[40];
-    const auto end = std::to_chars(buffer, buffer + sizeof buffer, x == 0.0 ? 0.0 : x, std::chars_format::general, digits);
-    return {buffer, end.ptr};
-}
+std::string shown(double x, int digits = 5) { return is_finite(x) ? text_of(x, digits) : "unknown"; }
 
 class Page {
 public:

@@ -15,11 +15,7 @@ namespace {
 // Margins below which settings need somebody's name (common practice, no source).
 constexpr double weak_max_sensitivity = 2.0, weak_gain_margin = 1.7, weak_phase_margin_deg = 30.0;
 
-std::string short_text(double x) {
-    char buffer[40];
-    const auto end = std::to_chars(buffer, buffer + sizeof buffer, x, std::chars_format::general, 4);
-    return {buffer, end.ptr};
-}
+std::string short_text(double x) { return text_of(x, 4); }
 
 // The range that record and form agree on.
 std::optional<Range> agreed(const std::optional<Range>& record, const std::optional<Range>& form, const char* name) {

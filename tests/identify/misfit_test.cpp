@@ -105,6 +105,19 @@ TEST_CASE("standard errors allow for correlated noise", "[invariant]") {
     for (double s : sum) CHECK(std::sqrt(s) == Approx(1.0).margin(0.25));
 }
 
+// Found by fuzzing: a span to which adding 1 changes nothing once made the thinning loop for ever.
+TEST_CASE("absurd spans of time come to an end", "[regression]") {
+    for (double span : {1e17, 1e300}) {
+        RecordColumns c;
+        for (int i = 0; i < 300; ++i) {
+            c.time_s.push_back(i < 299 ? i : span);
+            c.output.push_back(i < 100 ? 1.0 : 2.0);
+            c.process_value.push_back(i < 120 ? 1.0 : 3.0);
+        }
+        CHECK(identify(Record(c)).advice() >= Advice::tune);
+    }
+}
+
 TEST_CASE("what cannot be told apart has no settings", "[closed form]") {
     // The lag is a thousandth of the sampling: any dead time between two samples fits as well.
     RecordColumns c = simulated::columns(Truth{.lag = 0.01, .noise = 0.1, .samples = 40}, 1);

@@ -33,6 +33,14 @@ inline std::string text_of(double x) {
     return {buffer, end.ptr};
 }
 
+/// The same rounded to `digits` significant ones, for people to read.
+inline std::string text_of(double x, int digits) {
+    if (!is_finite(x) || x == 0.0) return text_of(x == 0.0 ? 0.0 : x);
+    char buffer[40];
+    const auto end = std::to_chars(buffer, buffer + sizeof buffer, x, std::chars_format::general, digits);
+    return {buffer, end.ptr};
+}
+
 namespace detail {
 
 /// The parts in one string. Chains of operator+ cost every includer far more to compile.
