@@ -150,6 +150,8 @@ void take_margins(const LoopCurve& curve, const SweepResult& found, Robustness& 
 
 }  // namespace
 
+bool operator==(const Robustness&, const Robustness&) = default;
+
 Robustness robustness(const TransferFunction& open_loop) {
     const LoopCurve curve(open_loop);
     Robustness r;

@@ -9,6 +9,9 @@
 namespace tauwright {
 inline namespace v0 {
 
+bool operator==(const Duty&, const Duty&) = default;
+bool operator==(const Figures&, const Figures&) = default;
+
 void check(const Duty& duty) {
     const struct { const char* name; double value; } numbers[] = {
         {"duty.setpoint_step", duty.setpoint_step}, {"duty.load_step", duty.load_step},

@@ -38,7 +38,17 @@ void add(const double* t, const double* y, std::size_t count, double start, doub
         for (std::size_t l = 0; l < lanes; ++l) sums[k] += acc[k][l];
 }
 
+TAUWRIGHT_DETAIL_FOR_EVERY_CPU
+void fill(const double* t, const double* y, std::size_t count, const DecayModel& m, double* out) {
+    for (std::size_t i = 0; i < count; ++i)
+        out[i] = y[i] - (m.constant + m.drift * (t[i] - m.center) + m.decay * decaying_exponential(-m.rate * (t[i] - m.start)));
+}
+
 }  // namespace
+
+void decay_residuals(const double* t, const double* y, std::size_t count, const DecayModel& model, double* out) {
+    fill(t, y, count, model, out);
+}
 
 DecaySums decay_sums(const double* t, const double* y, std::size_t count, double start, double rate, double center) {
     double s[sum_count] = {};

@@ -14,6 +14,12 @@ struct DecaySums {
 
 DecaySums decay_sums(const double* t, const double* y, std::size_t count, double start, double rate, double center);
 
+/// out[i] = y[i] - (constant + drift (t[i] - center) + decay exp(-(t[i] - start) rate)).
+struct DecayModel {
+    double start = 0, rate = 0, center = 0, constant = 0, drift = 0, decay = 0;
+};
+void decay_residuals(const double* t, const double* y, std::size_t count, const DecayModel& model, double* out);
+
 }  // namespace detail
 }  // namespace v0
 }  // namespace tauwright

@@ -138,9 +138,8 @@ void find_weak_response(const FitData& data, const FitResult& result, FittedMode
 }
 
 // Residuals that wander in company with the moves: the form, a load, a drift or the valve does not suit.
-void find_misfit(const Record& record, const FitData& data, const FitResult& result, const FitOptions& options, FittedModel& fit) {
+void find_misfit(const Record& record, const FitData& data, const FitResult& result, double wandering, FittedModel& fit) {
     const double size = response_size(data, fit.form, result.parameters);
-    const double wandering = residual_shape(data, fit.form, result, options).wandering;
     const double share = size > 0.0 ? wandering / size : 0.0;
     // Where the wandering is no larger than the noise from sample to sample, it is noise.
     if (!(share > 0.015) || wandering < 1.5 * std::sqrt(std::max(fit.noise * fit.noise - wandering * wandering, 0.0))) return;
@@ -272,9 +271,9 @@ void look_at_record(const Record& record, const FitData& data, std::vector<Findi
 }
 
 void look_at_fit(const Record& record, const FitData& data, const FitResult& result, const FitOptions& options,
-                 FittedModel& fit) {
+                 const ResidualShape& shape, FittedModel& fit) {
     find_weak_response(data, result, fit);
-    find_misfit(record, data, result, options, fit);
+    find_misfit(record, data, result, shape.wandering, fit);
     find_early_end(record, data, fit);
     find_unsteady_start(data, result, options, fit);
     find_unequal_gains(data, result, options, fit);

@@ -15,7 +15,7 @@ void look_at_record(const Record& record, const FitData& data, std::vector<Findi
 
 /// Findings that compare the record with its fit.
 void look_at_fit(const Record& record, const FitData& data, const FitResult& result, const FitOptions& options,
-                 FittedModel& fit);
+                 const ResidualShape& shape, FittedModel& fit);
 
 }  // namespace detail
 }  // namespace v0

@@ -154,7 +154,7 @@ AtStart at_start(const Candidate& c, double noise) {
     return out;
 }
 
-void report(const Candidate& c, const FitData& data, FittedModel& fit) {
+void report(const Candidate& c, const FitData& data, const ResidualShape& shape, FittedModel& fit) {
     const std::size_t n = data.t.size(), p = free_count(c.options);
     fit.form = c.form;
     fit.samples_used = n;
@@ -164,7 +164,6 @@ void report(const Candidate& c, const FitData& data, FittedModel& fit) {
     double total = 0.0;
     for (double y : data.y) total += y * y;
     fit.r_squared = total > 0.0 ? 1.0 - fit.sum_of_squares / total : 0.0;
-    const ResidualShape shape = residual_shape(data, c.form, c.result, c.options);
     // Small correlations are chance; 3 / sqrt(n) is three standard errors of none at all.
     if (shape.correlation > 3.0 / std::sqrt(static_cast<double>(n))) fit.residual_correlation = std::min(shape.correlation, 0.999);
     const double widening = std::sqrt((1.0 + fit.residual_correlation) / (1.0 - fit.residual_correlation));
@@ -227,8 +226,9 @@ FittedModel identify(const Record& record, const IdentifyOptions& options) {
     }
     look_at_record(record, data, fit.findings);
     const Candidate best = chosen_form(options, data, fit.form_reason);
-    report(best, data, fit);
-    look_at_fit(record, data, best.result, best.options, fit);
+    const ResidualShape shape = residual_shape(data, best.form, best.result, best.options);
+    report(best, data, shape, fit);
+    look_at_fit(record, data, best.result, best.options, shape, fit);
     return fit;
 }
 

@@ -57,7 +57,7 @@ struct Robustness {
     std::vector<GainCrossover> gain_crossovers = {};
     std::vector<PhaseCrossover> phase_crossovers = {};  ///< as far as they matter: at most 1000
 
-    friend bool operator==(const Robustness&, const Robustness&) = default;
+    friend bool operator==(const Robustness&, const Robustness&);
 };
 
 struct RobustnessOptions {

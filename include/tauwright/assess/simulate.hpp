@@ -29,7 +29,7 @@ struct Duty {
     double resting_output() const noexcept { return rest_output.value_or(0.5 * (output_low + output_high)); }
     double resting_process_value() const noexcept { return rest_process_value.value_or(50.0); }
 
-    friend bool operator==(const Duty&, const Duty&) = default;
+    friend bool operator==(const Duty&, const Duty&);
 };
 
 /// Throws `not_finite` or `out_of_domain` naming the member of `duty` that makes no sense.
@@ -60,7 +60,7 @@ struct Figures {
     double integrated_absolute_error = 0.0;        ///< IAE, unit of the process value times s
     double valve_travel = 0.0;                     ///< sum of |output changes|, from the rest output on
 
-    friend bool operator==(const Figures&, const Figures&) = default;
+    friend bool operator==(const Figures&, const Figures&);
 };
 
 Figures figures(const Trend& trend);

@@ -35,13 +35,13 @@ public:
     explicit Record(RecordColumns columns);
 
     std::size_t size() const noexcept { return columns_.time_s.size(); }
-    std::span<const double> time_s() const noexcept { return columns_.time_s; }
-    std::span<const double> output() const noexcept { return columns_.output; }
-    std::span<const double> process_value() const noexcept { return columns_.process_value; }
+    std::span<const double> time_s() const noexcept { return {columns_.time_s.data(), columns_.time_s.size()}; }
+    std::span<const double> output() const noexcept { return {columns_.output.data(), columns_.output.size()}; }
+    std::span<const double> process_value() const noexcept { return {columns_.process_value.data(), columns_.process_value.size()}; }
     bool good(std::size_t i) const noexcept { return columns_.good.empty() || columns_.good[i] != 0; }
     std::size_t good_count() const noexcept;
-    std::span<const double> setpoint() const noexcept { return columns_.setpoint; }
-    std::span<const std::uint8_t> automatic() const noexcept { return columns_.automatic; }
+    std::span<const double> setpoint() const noexcept { return {columns_.setpoint.data(), columns_.setpoint.size()}; }
+    std::span<const std::uint8_t> automatic() const noexcept { return {columns_.automatic.data(), columns_.automatic.size()}; }
     const std::optional<Range>& output_range() const noexcept { return columns_.output_range; }
     const std::optional<Range>& process_value_range() const noexcept { return columns_.process_value_range; }
 

@@ -3,7 +3,6 @@
 
 #include <complex>
 #include <cstddef>
-#include <span>
 #include <vector>
 
 #include "tauwright/model/transfer_function.hpp"
@@ -32,7 +31,7 @@ inline Polynomial expanded(const std::vector<double>& real, const std::vector<Qu
     return p;
 }
 
-inline std::complex<double> value_at(std::span<const double> p, std::complex<double> s) noexcept {
+inline std::complex<double> value_at(const Polynomial& p, std::complex<double> s) noexcept {
     std::complex<double> value = 0.0;
     for (std::size_t k = p.size(); k-- > 0;) value = value * s + p[k];
     return value;

@@ -128,25 +128,29 @@ inline std::complex<double> power_of(std::complex<double> s, int n) noexcept {
     return p;
 }
 
-inline void append_roots(const QuadraticFactor& f, std::vector<std::complex<double>>& roots) {
+inline void put_roots(const QuadraticFactor& f, std::complex<double>* roots) {
     const double T = f.time_constant, z = f.damping;
     if (std::abs(z) < 1.0) {
         const double imaginary = std::sqrt((1.0 - z) * (1.0 + z)) / T;
-        roots.push_back({-z / T, imaginary});
-        roots.push_back({-z / T, -imaginary});
+        roots[0] = {-z / T, imaginary};
+        roots[1] = {-z / T, -imaginary};
         return;
     }
     // Real pair: the larger root first, the other from the product 1/T^2.
     const double large = -(z + std::copysign(std::sqrt((z - 1.0) * (z + 1.0)), z)) / T;
-    roots.push_back(large);
-    roots.push_back(1.0 / (T * T * large));
+    roots[0] = large;
+    roots[1] = 1.0 / (T * T * large);
 }
 
 inline std::vector<std::complex<double>> roots_of(int at_origin, const std::vector<double>& real,
                                                   const std::vector<QuadraticFactor>& pairs) {
-    std::vector<std::complex<double>> roots(static_cast<std::size_t>(at_origin), 0.0);
-    for (double T : real) roots.push_back(-1.0 / T);
-    for (const auto& f : pairs) append_roots(f, roots);
+    std::size_t next = static_cast<std::size_t>(at_origin);
+    std::vector<std::complex<double>> roots(next + real.size() + 2 * pairs.size());
+    for (double T : real) roots[next++] = -1.0 / T;
+    for (const auto& f : pairs) {
+        put_roots(f, &roots[next]);
+        next += 2;
+    }
     return roots;
 }
 
@@ -300,10 +304,10 @@ inline TransferFunction operator*(const TransferFunction& a, const TransferFunct
     f.gain *= g.gain;
     f.integrators += g.integrators;
     f.zeros_at_origin += g.zeros_at_origin;
-    f.leads.insert(f.leads.end(), g.leads.begin(), g.leads.end());
-    f.lags.insert(f.lags.end(), g.lags.begin(), g.lags.end());
-    f.lead_pairs.insert(f.lead_pairs.end(), g.lead_pairs.begin(), g.lead_pairs.end());
-    f.lag_pairs.insert(f.lag_pairs.end(), g.lag_pairs.begin(), g.lag_pairs.end());
+    for (double T : g.leads) f.leads.push_back(T);
+    for (double T : g.lags) f.lags.push_back(T);
+    for (const auto& pair : g.lead_pairs) f.lead_pairs.push_back(pair);
+    for (const auto& pair : g.lag_pairs) f.lag_pairs.push_back(pair);
     f.dead_time += g.dead_time;
     return TransferFunction::from_factors(std::move(f));
 }
