@@ -40,6 +40,7 @@ Record record_from(const py::object& time_s, const py::object& output, const py:
                                                               "; give one value a sample in each");
     c.output_range = range_from("output_range", output_range);
     c.process_value_range = range_from("process_value_range", process_value_range);
+    const py::gil_scoped_release released;  // from here on only C++ arrays are looked at
     return Record(std::move(c));
 }
 

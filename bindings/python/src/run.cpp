@@ -83,7 +83,7 @@ void bind_run(py::module_& m) {
         .def(py::init<const tw::PidSettings&, double, double, double, std::optional<double>>(), "settings"_a, py::kw_only(),
              "scan_time"_a, "output_low"_a = 0.0, "output_high"_a = 100.0, "initial_output"_a = py::none())
         .def("step", &PidBlock::step, "setpoint"_a, "process_value"_a,
-             "One scan; returns the output. A value that is not finite holds the output and sets flag_bad_input.")
+             "One scan; returns the output. A value that is not finite, or beyond 1e150, holds the output and sets flag_bad_input.")
         .def_property_readonly("flags", [](const PidBlock& b) { return b.block().flags(); },
                                "what the last step had to say: a sum of flag_bad_input, flag_limited_low,\n"
                                "flag_limited_high, flag_manual")

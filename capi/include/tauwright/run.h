@@ -18,7 +18,7 @@ enum tauw_mode { TAUW_MODE_MANUAL = 0, TAUW_MODE_AUTOMATIC = 1 };
 
 /* Bits that say what the last step of a PID block had to say. */
 enum tauw_pid_flag {
-    TAUW_FLAG_BAD_INPUT = 1,    /* set point or process value was not finite; the output was held */
+    TAUW_FLAG_BAD_INPUT = 1,    /* no usable set point or process value; the output was held */
     TAUW_FLAG_LIMITED_LOW = 2,  /* the output is at its low limit */
     TAUW_FLAG_LIMITED_HIGH = 4, /* the output is at its high limit */
     TAUW_FLAG_MANUAL = 8        /* the output is the manual one */
@@ -71,7 +71,7 @@ TAUW_API int32_t tauw_pid_block_init(void* memory, size_t size, const tauw_pid_c
                                      double output_low, double output_high, const double* initial_output,
                                      tauw_pid_block** block, tauw_error* error);
 
-/* One scan. A set point or process value that is not finite is no error: it holds the output, sets
+/* One scan. A set point or process value that is not finite, or beyond 1e150, is no error: it holds the output, sets
  * TAUW_FLAG_BAD_INPUT, and the next good scan takes over without a bump.
  * Since 0.1. One thread at a time per block. Real-time safe. */
 TAUW_API int32_t tauw_pid_block_step(tauw_pid_block* block, double setpoint, double process_value, double* output,

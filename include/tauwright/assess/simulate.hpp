@@ -63,6 +63,7 @@ struct Figures {
     friend bool operator==(const Figures&, const Figures&);
 };
 
+/// Does not throw. Of a trend shorter than two scans, all empty or 0.
 Figures figures(const Trend& trend);
 
 }  // namespace v0

@@ -150,7 +150,7 @@ inline void enter_derivative(Entered& e, const ControllerForm& form, double time
 
 /// The numbers to key in for `settings` (gain in percent per percent, times in seconds), rounded to
 /// the form's display. Exact up to that rounding. A form whose proportional action looks at the process
-/// value has set-point weight 0. Does not allocate but for errors. Throws `no_equivalent`, `action_would_be_lost`,
+/// value has set-point weight 0. Throws `no_equivalent`, `action_would_be_lost`,
 /// `outside_field_limits`, `missing_range` with the field, the value and the remedy.
 inline Entered entered_as(const PidSettings& settings, const ControllerForm& form) {
     require(settings);

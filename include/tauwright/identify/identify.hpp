@@ -103,7 +103,8 @@ struct FittedModel {
 FittedModel identify(const Record& record, const IdentifyOptions& options = {});
 
 /// The fit's process value at every sample of `record`, bad ones included; empty where nothing was
-/// fitted. Allocates.
+/// fitted. The record may be another than the fit's: it starts at rest with its own first output.
+/// Never throws but for memory. Allocates.
 std::vector<double> fitted_response(const FittedModel& fit, const Record& record);
 
 }  // namespace v0

@@ -11,13 +11,14 @@
 namespace tauwright {
 inline namespace v0 {
 
-/// gain exp(-dead_time s) / (lag s + 1). Times in seconds; `lag` > 0, `dead_time` >= 0, gain not 0.
+/// gain exp(-dead_time s) / (lag s + 1). Times in seconds; `lag` > 0, `dead_time` >= 0, gain not 0;
+/// throws `out_of_domain` or `not_finite` naming the argument. Allocates.
 inline TransferFunction first_order_plus_dead_time(double gain, double lag, double dead_time) {
     detail::require_positive("lag", lag);
     return TransferFunction::from_factors({.gain = gain, .lags = {lag}, .dead_time = dead_time});
 }
 
-/// gain exp(-dead_time s) / ((lag_1 s + 1)(lag_2 s + 1)).
+/// gain exp(-dead_time s) / ((lag_1 s + 1)(lag_2 s + 1)). Domain and errors as above. Allocates.
 inline TransferFunction second_order_plus_dead_time(double gain, double lag_1, double lag_2, double dead_time) {
     detail::require_positive("lag_1", lag_1);
     detail::require_positive("lag_2", lag_2);
@@ -25,7 +26,7 @@ inline TransferFunction second_order_plus_dead_time(double gain, double lag_1, d
 }
 
 /// slope exp(-dead_time s) / (s (lag s + 1)); `slope` in process-value units per second per output
-/// unit, `lag` 0 means none.
+/// unit, `lag` 0 means none. Errors as above. Allocates.
 inline TransferFunction integrating_plus_dead_time(double slope, double dead_time, double lag = 0.0) {
     detail::require_not_zero("slope", slope);
     detail::require_not_negative("lag", lag);
@@ -35,6 +36,7 @@ inline TransferFunction integrating_plus_dead_time(double slope, double dead_tim
 }
 
 /// gain exp(-dead_time s) / (T^2 s^2 + 2 damping T s + 1), T = time_constant > 0, damping >= 0.
+/// Errors as above. Allocates.
 inline TransferFunction oscillatory_plus_dead_time(double gain, double time_constant, double damping,
                                                    double dead_time) {
     detail::require_positive("time_constant", time_constant);
@@ -44,7 +46,7 @@ inline TransferFunction oscillatory_plus_dead_time(double gain, double time_cons
 }
 
 /// The same process with process value and output in percent of span: gain * output span /
-/// process-value span.
+/// process-value span. Throws what `check` says of a range. Allocates.
 inline TransferFunction in_percent(const TransferFunction& process, const Range& process_value_range,
                                    const Range& output_range) {
     check(process_value_range, "process_value_range");

@@ -94,8 +94,9 @@ public:
     /// Zeros with a real part above 0.
     int right_half_plane_zeros() const noexcept;
 
-    /// 1/G of the rational part. Throws `out_of_domain` where dead time would become prediction.
+    /// 1/G of the rational part. Throws `out_of_domain` where dead time would become prediction. Allocates.
     TransferFunction inverse() const;
+    /// The same with another dead time (s, >= 0) or gain (not 0); throw as `from_factors`. Allocate.
     TransferFunction with_dead_time(double dead_time_s) const;
     TransferFunction with_gain(double gain) const;
     /// Removes factors that are equal to the last bit in numerator and denominator, integrators
@@ -105,7 +106,7 @@ public:
     friend TransferFunction operator*(const TransferFunction& a, const TransferFunction& b);
     friend bool operator==(const TransferFunction&, const TransferFunction&) = default;
 
-    /// One line, for example "2 exp(-3 s) / (10 s + 1)", times in seconds.
+    /// One line (allocates), for example "2 exp(-3 s) / (10 s + 1)", times in seconds.
     std::string text() const;
 
 private:

@@ -64,7 +64,8 @@ struct TuningSheet {
     /// JSON (RFC 8259), schema "tauwright-tuning-sheet" version 1, stable key order; the schema file
     /// is src/tune/tuning_sheet.schema.json. Infinite margins are the word "infinite".
     std::string json() const;
-    /// Reads what `json` wrote. Throws `file_malformed` or `schema_unsupported` with the place.
+    /// Reads what `json` wrote. Throws `file_malformed` (not JSON, a member missing, of the wrong kind, or
+    /// at odds with another) or `schema_unsupported`, with the place. Allocates.
     static TuningSheet from_json(std::string_view json);
 };
 
@@ -79,7 +80,7 @@ struct SheetDifference {
     std::string later = {};
 };
 
-/// Everything that differs, in the order of the document.
+/// Everything that differs, in the order of the document. Never throws but for memory. Allocates.
 std::vector<SheetDifference> differences(const TuningSheet& earlier, const TuningSheet& later);
 
 }  // namespace v0
