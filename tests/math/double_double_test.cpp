@@ -22,7 +22,7 @@ double any_double(std::mt19937_64& random, int lowest_power, int highest_power) 
 }  // namespace
 
 // The error of a product is one fused multiply-add; that of a sum is exact in 64-bit integers.
-TEST_CASE("sums and products lose nothing", "[double_double]") {
+TEST_CASE("sums and products lose nothing", "[closed form]") {
     CAPTURE(seed);
     std::mt19937_64 random(seed);
     for (int i = 0; i < 20000; ++i) {
@@ -40,7 +40,7 @@ TEST_CASE("sums and products lose nothing", "[double_double]") {
 }
 
 // (y - 1)^20 near y = 1 from its coefficients: plain Horner has no digit left, and the closed form needs none.
-TEST_CASE("the complex multiply-add keeps the promised error", "[double_double]") {
+TEST_CASE("the complex multiply-add keeps the promised error", "[closed form]") {
     CAPTURE(seed);
     std::mt19937_64 random(seed);
     std::uniform_real_distribution<double> offset(-0.3, 0.3);
@@ -67,7 +67,7 @@ TEST_CASE("the complex multiply-add keeps the promised error", "[double_double]"
     REQUIRE(worst > 1e-3);  // without the carried error it would have failed
 }
 
-TEST_CASE("four lanes give the bits of four scalars", "[lanes]") {
+TEST_CASE("four lanes give the bits of four scalars", "[invariant]") {
     CAPTURE(seed);
     std::mt19937_64 random(seed);
     double a[4], b[4], c[4], d[4];

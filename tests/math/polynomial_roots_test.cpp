@@ -66,7 +66,7 @@ void require_symmetric(const PolynomialRoots& roots) {
 
 }  // namespace
 
-TEST_CASE("roots of stored coefficients agree with mpmath", "[polynomial_roots]") {
+TEST_CASE("roots of stored coefficients agree with mpmath", "[independent computation]") {
     for (const ReferencePolynomial& p : reference_polynomials) {
         const std::size_t n = p.coefficients.size() - 1;
         CAPTURE(p.family, n);
@@ -95,7 +95,7 @@ TEST_CASE("roots of stored coefficients agree with mpmath", "[polynomial_roots]"
     }
 }
 
-TEST_CASE("degrees 0, 1 and 2 by hand", "[polynomial_roots]") {
+TEST_CASE("degrees 0, 1 and 2 by hand", "[closed form]") {
     CHECK(polynomial_roots(std::vector{5.0}).values.empty());
     CHECK(polynomial_roots(std::vector{4.0, -2.0}).values == std::vector<Complex>{0.5});
     CHECK(polynomial_roots(std::vector{1.0, -2.0, 1.0}).values == std::vector<Complex>{1.0, 1.0});
@@ -112,14 +112,14 @@ TEST_CASE("degrees 0, 1 and 2 by hand", "[polynomial_roots]") {
     CHECK(apart[1].real() == Approx(-1e9).epsilon(3e-16));
 }
 
-TEST_CASE("roots at 0 are exact and come first", "[polynomial_roots]") {
+TEST_CASE("roots at 0 are exact and come first", "[closed form]") {
     const auto roots = polynomial_roots(std::vector{1.0, 6.0, 11.0, 6.0, 0.0, 0.0, 0.0});
     CHECK(roots.values == std::vector<Complex>{0.0, 0.0, 0.0, -1.0, -2.0, -3.0});
     for (std::size_t i = 0; i < 3; ++i) CHECK(roots.error_radii[i] == 0.0);
     CHECK(polynomial_roots(std::vector{3.0, 0.0}).values == std::vector<Complex>{0.0});
 }
 
-TEST_CASE("roots of unity, to degree 100", "[polynomial_roots]") {
+TEST_CASE("roots of unity, to degree 100", "[closed form]") {
     for (const std::size_t n : {3u, 4u, 5u, 7u, 20u, 50u, 100u}) {
         CAPTURE(n);
         std::vector<double> p(n + 1, 0.0);
@@ -136,7 +136,7 @@ TEST_CASE("roots of unity, to degree 100", "[polynomial_roots]") {
     }
 }
 
-TEST_CASE("the whole range of a double neither overflows nor vanishes", "[polynomial_roots]") {
+TEST_CASE("the whole range of a double neither overflows nor vanishes", "[closed form]") {
     // Roots of (x + 1e-150)(x + 1)(x + 1e150), each right to a part in 1e150.
     const auto wide = polynomial_roots(std::vector{1e-100, 1e50, 1e50, 1e-100}).values;
     CHECK(wide[0].real() == Approx(-1e-150).epsilon(4e-16));
@@ -161,7 +161,7 @@ TEST_CASE("the whole range of a double neither overflows nor vanishes", "[polyno
 }
 
 // Coefficients are exact integers, roots known in closed form: iterates fall on the very same double here.
-TEST_CASE("multiple roots stay within their radii", "[polynomial_roots]") {
+TEST_CASE("multiple roots stay within their radii", "[closed form]") {
     constexpr std::uint64_t seed = 20240612;
     CAPTURE(seed);
     std::mt19937_64 random(seed);
@@ -194,7 +194,7 @@ TEST_CASE("multiple roots stay within their radii", "[polynomial_roots]") {
     }
 }
 
-TEST_CASE("what is no polynomial is refused", "[polynomial_roots]") {
+TEST_CASE("what is no polynomial is refused", "[closed form]") {
     CHECK_THROWS_AS(polynomial_roots(std::vector<double>{}), std::invalid_argument);
     CHECK_THROWS_AS(polynomial_roots(std::vector{0.0, 1.0}), std::invalid_argument);
     CHECK_THROWS_AS(polynomial_roots(std::vector{1.0, infinity, 1.0}), std::invalid_argument);
@@ -255,7 +255,7 @@ void require_small_residuals(const std::vector<double>& p, const PolynomialRoots
 
 }  // namespace
 
-TEST_CASE("invariants of random polynomials", "[polynomial_roots]") {
+TEST_CASE("invariants of random polynomials", "[invariant]") {
     constexpr std::uint64_t seed = 20240613;
     CAPTURE(seed);
     std::mt19937_64 random(seed);

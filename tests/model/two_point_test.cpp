@@ -15,7 +15,4 @@ TEST_CASE("two-point and 35/85 levels of a first-order step", "[published]") {
     CHECK(y[3] == Approx(0.632).epsilon(1e-12));
     CHECK(y[4] == Approx(0.353).epsilon(1e-12));
     CHECK(y[5] == Approx(0.853).epsilon(1e-12));
-    // lag = 1.5 (t63 - t28), dead time = t63 - lag.
-    CHECK(1.5 * (times[1] - times[0]) == 12.0);
-    CHECK(times[1] - 12.0 == 3.0);
 }
