@@ -11,6 +11,10 @@ static_assert(std::is_trivially_copyable_v<run::PidBlock>);
 static_assert(std::is_trivially_copyable_v<run::ProcessBlock>);
 static_assert(std::is_trivially_copyable_v<run::PidCoefficients>);
 static_assert(std::is_trivially_copyable_v<run::ProcessCoefficients>);
+static_assert(std::is_trivially_copyable_v<run::Valve>);
+static_assert(std::is_trivially_copyable_v<run::ValveCoefficients>);
+static_assert(std::is_trivially_copyable_v<run::Transmitter>);
+static_assert(std::is_trivially_copyable_v<run::TransmitterCoefficients>);
 
 extern "C" int run_alone_start(run::PidBlock* block, double gain, double integral_time, double scan_time) {
     run::PidCoefficients coefficients;
@@ -23,6 +27,12 @@ extern "C" int run_alone_start(run::PidBlock* block, double gain, double integra
 extern "C" double run_alone_step(run::PidBlock* block, run::ProcessBlock* process, double* line, double setpoint) {
     const double output = block->step(setpoint, process->process_value());
     return process->step(output, line);
+}
+
+extern "C" double run_alone_loop(run::PidBlock* block, run::Valve* valve, run::ProcessBlock* process,
+                                 run::Transmitter* transmitter, double* line, double setpoint) {
+    const double measured = transmitter->step(process->process_value());
+    return process->step(valve->step(block->step(setpoint, measured)), line);
 }
 
 extern "C" void run_alone_mode(run::PidBlock* block, int automatic, double output) {

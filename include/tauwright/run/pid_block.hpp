@@ -2,6 +2,7 @@
 #pragma once
 
 #include <cstdint>
+#include <limits>
 
 #include "tauwright/core/error_code.hpp"
 #include "tauwright/core/finite.hpp"
@@ -23,6 +24,8 @@ struct PidCoefficients {
     double derivative_smoothing = 1.0;
     double measurement_smoothing = 1.0;
     double tracking_per_scan = 0.0;  ///< share of the excess over a limit that the integral gives up per scan
+    /// Farthest the output goes from the one before in automatic, 0 or above. The integral tracks it like a limit.
+    double output_change_per_scan = std::numeric_limits<double>::infinity();
 
     friend bool operator==(const PidCoefficients&, const PidCoefficients&) = default;
 };
@@ -38,7 +41,7 @@ enum PidFlag : std::uint32_t {
 };
 
 /// A PID controller: two degrees of freedom, filtered derivative on the process value, measurement
-/// filter, output limits with tracking anti-windup, manual and automatic without a bump, bad input
+/// filter, output limits and rate limit with tracking anti-windup, manual and automatic without a bump, bad input
 /// held and flagged. Every member function is real-time safe: bounded time, no allocation.
 /// Source: Astrom and Hagglund, Advanced PID Control, 2006, chapters 3 and 13 (back-calculation).
 class PidBlock {
@@ -83,7 +86,7 @@ public:
         const double integral = integral_ + coefficients_.integral_per_scan * (sp - measured_);
         const double wanted = P + integral + D;
         if (!usable(wanted) || !usable(integral)) return held();  // a gain beyond reason
-        output_ = flushed(limited(wanted));
+        output_ = flushed(within_reach(wanted));
         integral_ = flushed(integral + coefficients_.tracking_per_scan * (output_ - wanted));
         flags_ = limit_flags(output_);
         return output_;
@@ -132,6 +135,16 @@ private:
     double limited(double x) const noexcept {
         const double above = x > output_low_ ? x : output_low_;
         return above < output_high_ ? above : output_high_;
+    }
+    // Within the limits and within one scan's change of the output before.
+    double within_reach(double x) const noexcept {
+        const double change = coefficients_.output_change_per_scan;
+        if (change < std::numeric_limits<double>::infinity()) {
+            const double low = output_ - change, high = output_ + change;
+            x = x > low ? x : low;
+            x = x < high ? x : high;
+        }
+        return limited(x);
     }
     std::uint32_t limit_flags(double output) const noexcept {
         return (output <= output_low_ ? std::uint32_t{flag_limited_low} : 0u) |
