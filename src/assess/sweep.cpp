@@ -1,9 +1,10 @@
 #include "assess/sweep.hpp"
 
-#include <algorithm>
-#include <boost/math/tools/toms748_solve.hpp>
-#include <cmath>
-#include <limits>
+#include <numbers>
+
+#include "assess/crossing.hpp"
+#include "assess/low_end.hpp"
+#include "tauwright/core/finite.hpp"
 
 namespace tauwright {
 inline namespace v0 {
@@ -12,256 +13,303 @@ namespace detail {
 namespace {
 
 constexpr double infinity = std::numeric_limits<double>::infinity();
-constexpr double closed_to = 1e-7;             // enclosures of peaks close to this, relative
-constexpr std::size_t most_points = 400'000;   // looked at before the sweep gives up
+constexpr double closed_to = 1e-7;            // enclosures of peaks close to this, relative, where no proof of convexity helps
+constexpr std::size_t most_points = 400'000;  // looked at before the sweep gives up
 constexpr std::size_t most_crossings = 1000;
-
-using Policy = boost::math::policies::policy<boost::math::policies::promote_double<false>,
-                                             boost::math::policies::evaluation_error<boost::math::policies::ignore_error>>;
-
-template <class Function>
-double root_between(Function f, double low, double high) {
-    const double at_low = f(low), at_high = f(high);
-    if (at_low == 0.0) return low;
-    if (at_high == 0.0) return high;
-    std::uintmax_t passes = 200;
-    const auto ends = boost::math::tools::toms748_solve(f, low, high, at_low, at_high,
-                                                        boost::math::tools::eps_tolerance<double>(52), passes, Policy());
-    return 0.5 * (ends.first + ends.second);
-}
-
-// Angle from the negative real axis, -pi to pi.
-double angle_from_negative(std::complex<double> L) noexcept { return std::atan2(-L.imag(), -L.real()); }
 
 struct Todo {
     bool gain = true, phase = true, near_L = true, near_inverse = true;
     bool any() const noexcept { return gain || phase || near_L || near_inverse; }
 };
 
+struct End {
+    double w;
+    std::complex<double> L;
+};
+
 class Walk {
 public:
-    explicit Walk(const LoopCurve& curve) : curve_(curve) {}
+    Walk(const LoopCurve& curve, const LoopCurve* mirrored) : curve_(curve), mirrored_(mirrored), m_(curve.net_integrators()) {}
 
     SweepResult run() {
-        start();
-        double low = curve_.lowest();
-        const double dead_time = curve_.loop().dead_time();
-        const double first = low > 0.0 ? 0.0 : first_step();
-        for (;;) {
-            const double growth = std::max(low, first);
-            const double high = low + (dead_time > 0.0 ? std::min(growth, 1.0 / dead_time) : growth);
-            Todo todo;
-            todo.phase = !curve_.constant_phase();
-            visit(low, high, todo, 0);
-            low = high;
-            if (!result_.complete || finished(low)) break;
+        result_.complete = true;
+        note_limits();
+        look_ahead();
+        result_.head = low_end(curve_, m_ > 0 ? result_.inverse_to_minus_one.distance : result_.to_minus_one.distance);
+        double low = result_.head > 0.0 ? result_.head : lowest();
+        result_.tail = high_end();
+        End last{low, low > 0.0 ? curve_.at(low).L : curve_.low_gain()};
+        start_winding(last.L);
+        std::size_t next_axis = 0;
+        double factor = 2.0;
+        while (!finished(last.w)) {
+            const std::size_t before = points_;
+            double high = std::min({last.w > 0.0 ? factor * last.w : first_step(), last.w + widest(), curve_.end(), result_.tail});
+            const bool at_root = next_axis < curve_.axis_roots().size() && high > gap_low(next_axis);
+            if (at_root) high = std::max(gap_low(next_axis), last.w);
+            const End end{high, curve_.at(high).L};
+            look(end.L, high);
+            if (high > last.w) visit(last, end, {true, !curve_.constant_phase(), true, true}, 0);
+            last = at_root ? pass(next_axis++, end) : end;
+            factor = points_ - before <= 1 ? std::min(2.0 * factor, 32.0) : points_ - before > 4 ? std::max(0.5 * factor, 2.0) : factor;
+            if (!result_.complete) break;
         }
-        finish();
+        finish(last);
         return std::move(result_);
     }
 
 private:
     double first_step() const noexcept {
-        const double dead_time = curve_.loop().dead_time();
-        double step = dead_time > 0.0 ? 0.1 / dead_time : infinity;
-        for (const auto& p : curve_.loop().poles()) step = std::min(step, 0.1 * std::abs(p));
-        for (const auto& z : curve_.loop().zeros()) step = std::min(step, 0.1 * std::abs(z));
+        double step = 0.1 * curve_.smallest_root();
+        if (curve_.fastest_turn() > 0.0) step = std::min(step, 0.1 / curve_.fastest_turn());
         return is_finite(step) ? step : 1.0;
     }
+    // A piece wider than this only gets split: the dead time turns it too far.
+    double widest() const noexcept { return curve_.fastest_turn() > 0.0 ? 1.5 / curve_.fastest_turn() : infinity; }
 
-    void start() {
-        result_.complete = true;
-        // Limits at both ends count among the closest approaches.
-        const double infinite_gain = curve_.at_infinity();
-        result_.to_minus_one = {infinite_gain < 1.0 ? 1.0 - (curve_.loop().dead_time() > 0.0 ? infinite_gain : 0.0) : infinity,
-                                infinity};
-        if (curve_.relative_degree() == 0 && curve_.loop().dead_time() == 0.0)
-            result_.to_minus_one.distance = std::abs(1.0 + curve_.loop().leading_coefficient());
-        result_.inverse_to_minus_one = {infinity, infinity};
-        if (infinite_gain > 0.0 && curve_.relative_degree() == 0) {
-            const double k = curve_.loop().leading_coefficient();
-            result_.inverse_to_minus_one.distance =
-                curve_.loop().dead_time() > 0.0 ? std::abs(1.0 - 1.0 / std::abs(k)) : std::abs(1.0 + 1.0 / k);
-        }
-        if (curve_.net_integrators() > 0) note(1.0, 0.0, result_.inverse_to_minus_one);
-        if (curve_.net_integrators() == 0) {
-            const double K = curve_.loop().gain();
-            note(std::abs(1.0 + K), 0.0, result_.to_minus_one);
-            note(std::abs(1.0 + 1.0 / K), 0.0, result_.inverse_to_minus_one);
-        }
-        last_ = 1.0 + curve_.value(curve_.lowest());
-        if (curve_.net_integrators() > 0) {
-            // What 1 + L turns below the lowest frequency: there it is K / (jw)^m and turns no more.
-            std::complex<double> asymptote = curve_.loop().gain();
-            for (int i = 0; i < curve_.net_integrators(); ++i) asymptote /= std::complex<double>{0.0, 1.0};
-            result_.winding = std::arg(last_ / asymptote);
-        }
-        // A few looks in advance spare much proving later on.
-        double w = curve_.lowest() > 0.0 ? curve_.lowest() : 0.01 * first_step();
-        const double stop = std::max({10.0 * curve_.largest_root(), 1e3 * w,
-                                      curve_.loop().dead_time() > 0.0 ? 10.0 / curve_.loop().dead_time() : 0.0});
-        for (; w < stop; w *= 1.5) look(curve_.value(w), w);
+    // Where no proof from the limit succeeds: so far down that |L| is beyond 1e8 or below 1e-8.
+    double lowest() const noexcept {
+        if (m_ == 0) return 0.0;
+        const double asymptote = std::pow(std::abs(curve_.low_gain()) / (m_ > 0 ? 1e8 : 1e-8), 1.0 / m_);
+        const double w = std::min({asymptote, 1e-3 * curve_.smallest_root(), 1e-3 * widest()});
+        return is_finite(w) && w > 0.0 ? w : 1e-300;
     }
 
-    static void note(double distance, double w, Closest& closest) noexcept {
-        if (distance < closest.distance) closest = {distance, w};
+    double high_end() const noexcept {
+        if (mirrored_ == nullptr || mirrored_->net_integrators() >= 0) return curve_.end();
+        const double v = low_end(*mirrored_, result_.to_minus_one.distance);
+        return v > 0.0 ? std::max(1.0 / v, result_.head) : curve_.end();
+    }
+
+    // Limits at both ends count among the closest approaches.
+    void note_limits() noexcept {
+        result_.to_minus_one = {curve_.nearest_at_infinity(), infinity, false};
+        result_.inverse_to_minus_one = {curve_.inverse_nearest_at_infinity(), infinity, false};
+        const double K = curve_.low_gain();
+        if (m_ == 0) note_at_rest(std::abs(1.0 + K), std::abs(1.0 + 1.0 / K));
+        else if (m_ > 0) note_at_rest(infinity, 1.0);
+        else note_at_rest(1.0, infinity);
+    }
+    void note_at_rest(double distance, double inverse_distance) noexcept {
+        if (distance <= result_.to_minus_one.distance) result_.to_minus_one = {distance, 0.0, false};
+        if (inverse_distance <= result_.inverse_to_minus_one.distance) result_.inverse_to_minus_one = {inverse_distance, 0.0, false};
+    }
+
+    // This close to 0 it is the limit there, which is known.
+    void note(const Closest& found, Closest& closest) const noexcept {
+        if (found.distance * found.distance < beats(closest) && !(m_ == 0 && found.frequency < 1e-9 * first_step())) closest = found;
     }
     void look(std::complex<double> L, double w) noexcept {
-        note(std::abs(1.0 + L), w, result_.to_minus_one);
-        if (L != 0.0) note(std::abs(1.0 + 1.0 / L), w, result_.inverse_to_minus_one);
+        const double size = norm(L), distance = norm(1.0 + L);
+        if (distance < beats(result_.to_minus_one))
+            result_.to_minus_one = {std::sqrt(distance), w, false};
+        if (distance < beats(result_.inverse_to_minus_one) * size)
+            result_.inverse_to_minus_one = {std::sqrt(distance / size), w, false};
+    }
+    // The square that an approach must be below; at a limit by more than rounding.
+    static double beats(const Closest& closest) noexcept {
+        const bool limit = closest.frequency == 0.0 || !is_finite(closest.frequency);
+        return closest.distance * closest.distance * (limit ? 1.0 - 1e-14 : 1.0);
+    }
+    static double norm(std::complex<double> x) noexcept { return x.real() * x.real() + x.imag() * x.imag(); }
+
+    // A few looks in advance spare much proving later on.
+    void look_ahead() noexcept {
+        double corner = std::min(curve_.smallest_root(), curve_.fastest_turn() > 0.0 ? 1.0 / curve_.fastest_turn() : infinity);
+        if (m_ > 0) corner = std::min(corner, std::pow(std::abs(curve_.low_gain()), 1.0 / m_));
+        if (!is_finite(corner) || corner <= 0.0) corner = 1.0;
+        double stop = std::max(10.0 * curve_.largest_root(), curve_.fastest_turn() > 0.0 ? 6.0 / curve_.fastest_turn() : 0.0);
+        stop = std::min({std::max(stop, 100.0 * corner), 1e6 * corner, curve_.end()});
+        for (double w = 0.1 * corner; w < stop; w *= 1.6) {
+            const std::complex<double> L = curve_.at(w).L;
+            look(L, w);
+            if (norm(L) < 0.01 && w > curve_.largest_root()) break;
+        }
+        polish(result_.to_minus_one, false);
+        polish(result_.inverse_to_minus_one, true);
+    }
+
+    void polish(Closest& closest, bool inverse) noexcept {
+        const double w = closest.frequency;
+        if (!(w > 0.0) || !is_finite(w) || closest.inside) return;
+        const Closest polished = nearest_between(curve_, inverse, w / 1.6, std::min(1.6 * w, curve_.end()), w);
+        if (polished.distance <= closest.distance) closest = polished;
+    }
+
+    void start_winding(std::complex<double> first) noexcept {
+        last_ = 1.0 + first;
+        if (m_ <= 0) {
+            result_.winding = m_ < 0 ? std::arg(last_) : 0.0;
+            return;
+        }
+        // What 1 + L turns below the first point: down there it is K / (jw)^m and turns no more.
+        std::complex<double> asymptote = curve_.low_gain();
+        for (int i = 0; i < m_; ++i) asymptote = {asymptote.imag(), -asymptote.real()};
+        result_.winding = std::arg(last_ / asymptote);
+    }
+
+    // A root on the path: the last and first frequency looked at around it.
+    double gap_low(std::size_t i) const noexcept { return curve_.axis_roots()[i].w * (1.0 - 1e-9); }
+    End pass(std::size_t i, const End& before) {
+        const AxisRoot& root = curve_.axis_roots()[i];
+        const double w = root.w * (1.0 + 1e-9);
+        const End after{w, curve_.at(w).L};
+        const bool pole = root.poles > 0;
+        const double far = 1e3;
+        if (pole ? std::min(norm(before.L), norm(after.L)) < far * far : std::max(norm(before.L), norm(after.L)) > 1.0 / (far * far))
+            result_.complete = false;
+        // Around a pole to its right: half a turn back each.
+        const std::complex<double> next = 1.0 + after.L;
+        const double halves = pole ? root.poles : 0;
+        result_.winding += std::arg(next / last_ * (root.poles % 2 != 0 && pole ? -1.0 : 1.0)) - halves * std::numbers::pi;
+        last_ = next;
+        return after;
     }
 
     // Beyond w nothing can cross or come closer.
     bool finished(double w) const {
+        if (w >= curve_.end() || w >= result_.tail) return true;
+        if (!curve_.axis_roots().empty() && w < curve_.axis_roots().back().w) return false;
         const double bound = curve_.tail(w), rest = curve_.at_infinity();
+        if (curve_.limit() != 0.0) return settled_at_limit(w);
         if (!(bound < 1.0)) return rest >= 1.0 && w > 1e4 * std::max(curve_.largest_root(), first_step());
+        // Nothing is left where |L| cannot come back to what was found, or is as good as its limit.
+        const bool at_rest = rest > 0.0 && (bound <= rest * (1.0 + 1e-9) || w > 3e3 * curve_.largest_root());
+        if (at_rest || bound < 1e-7) return true;
         const double near = 1.0 - bound, inverse_near = 1.0 / bound - 1.0;
         if (near < result_.to_minus_one.distance * (1.0 - closed_to) ||
             inverse_near < result_.inverse_to_minus_one.distance * (1.0 - closed_to))
-            return bound < rest * (1.0 + 1e-6) || bound < 1e-7;
-        if (curve_.loop().dead_time() == 0.0)  // the phase has settled toward its last value
+            return false;
+        if (!curve_.has_dead_time())  // the phase has settled toward its last value
             return w > 1e3 * curve_.largest_root() || curve_.largest_root() == 0.0;
-        return bound < std::max(result_.largest_below_one, 1e-12) || bound < rest * (1.0 + 1e-3);
+        return bound < std::max(result_.largest_below_one, 1e-12);
     }
 
-    void visit(double low, double high, Todo todo, int depth) {
+    // Without dead time, and with a limit k at high frequency: log(L/k) is at most `left` from here on.
+    bool settled_at_limit(double w) const noexcept {
+        const double k = curve_.limit(), left = curve_.left_to_limit(w);
+        if (!(left < 0.5) || std::abs(std::log(std::abs(k))) <= left) return left < 1e-9;
+        const double away = std::abs(k) * (growth(left) - 1.0);
+        const double near = std::abs(1.0 + k) - away, inverse_near = std::abs(1.0 + 1.0 / k) - away / (k * k) * 2.0;
+        // A negative k is a phase crossing at infinity; on the way there it is passed once at most, early.
+        if (k < 0.0 && w < 1e3 * curve_.largest_root()) return false;
+        const double slack = 1.0 - closed_to;
+        return (near >= result_.to_minus_one.distance * slack && inverse_near >= result_.inverse_to_minus_one.distance * slack) || left < 1e-9;
+    }
+
+    void visit(const End& low, const End& high, Todo todo, int depth) {
         if (++points_ > most_points) {
             result_.complete = false;
             return;
         }
-        const double middle = 0.5 * (low + high), h = 0.5 * (high - low);
-        const CurvePoint point = curve_.at(middle);
-        const CurveBounds bounds = curve_.bounds(low, high);
-        const double bend = bounds.bend;
-        const double gain_change = std::abs(point.slope.real()) * h + 0.5 * bend * h * h;
-        const double phase_change = std::abs(point.slope.imag()) * h + 0.5 * bend * h * h;
-        look(point.L, middle);
-        if (todo.gain) todo.gain = !settle_gain(low, high, point, bend * h, gain_change);
-        if (todo.phase) todo.phase = !settle_phase(low, high, point, bend * h, phase_change);
-        const Piece piece{h, bounds, gain_change};
-        if (todo.near_L && settle_near({point.L, point.slope, point.bend}, piece, result_.to_minus_one)) {
+        const double middle = 0.5 * (low.w + high.w);
+        const Piece piece{low.w, high.w, curve_.at(middle), curve_.bounds(low.w, high.w)};
+        look(piece.middle.L, middle);
+        if (todo.gain) todo.gain = !settle_gain(piece);
+        if (todo.phase) todo.phase = !settle_phase(piece);
+        if (todo.near_L && settle_near(open_loop_at(piece.middle, m_), piece, false)) {
             // Over this piece 1 + L turns by less than half a circle.
-            const std::complex<double> next = 1.0 + curve_.value(high);
-            result_.winding += std::arg(next / last_);
+            const std::complex<double> next = 1.0 + high.L;
+            result_.winding += turn_between(last_, next);
             last_ = next;
             todo.near_L = false;
         }
-        if (todo.near_inverse)
-            todo.near_inverse = !settle_near({1.0 / point.L, -point.slope, -point.bend}, piece, result_.inverse_to_minus_one);
+        if (todo.near_inverse) todo.near_inverse = !settle_near(inverse_at(piece.middle, m_), piece, true);
         if (!todo.any()) return;
-        if (depth > 60 || middle <= low || middle >= high) {
-            // A root on the axis or a curve through -1: what is here has been looked at.
-            if (todo.near_L) last_ = 1.0 + curve_.value(high);
-            if (todo.near_L || todo.gain) result_.complete &= result_.to_minus_one.distance < 1e-8;
+        if (depth > 60 || middle <= low.w || middle >= high.w) {
+            // The curve goes through -1: what is here has been looked at.
+            if (todo.near_L) last_ = 1.0 + high.L;
+            if (todo.near_L || todo.gain || todo.phase) result_.complete &= result_.to_minus_one.distance < through_minus_one;
             return;
         }
-        visit(low, middle, todo, depth + 1);
-        visit(middle, high, todo, depth + 1);
+        const End center{middle, piece.middle.L};
+        visit(low, center, todo, depth + 1);
+        visit(center, high, todo, depth + 1);
     }
 
-    bool settle_gain(double low, double high, const CurvePoint& point, double slope_change, double change) {
-        const double level = std::log(std::abs(point.L));
-        if (std::abs(level) > change) return true;
-        // A gain of exactly 1 at rest touches without crossing.
-        if (low == 0.0 && high < 1e-4 * first_step() && std::abs(std::abs(curve_.loop().gain()) - 1.0) < 4e-16) return true;
-        if (!(std::abs(point.slope.real()) > slope_change)) return false;
-        const auto f = [&](double w) { return std::log(std::abs(curve_.value(w))); };
-        const double at_low = f(low), at_high = f(high);
-        if ((at_low > 0.0) != (at_high > 0.0)) result_.gain_crossings.push_back(root_between(f, low, high));
+    bool settle_gain(const Piece& piece) {
+        const CrossingSearch found = crossings(curve_, piece, CrossingOf::gain);
+        if (!found.settled) return false;
+        for (int i = 0; i < found.count; ++i) result_.gain_crossings.push_back(found.crossing[i]);
         return true;
     }
 
-    bool settle_phase(double low, double high, const CurvePoint& point, double slope_change, double change) {
-        const double angle = angle_from_negative(point.L);
-        if (std::abs(angle) > change) return true;
-        if (!(std::abs(point.slope.imag()) > slope_change) || !(std::abs(angle) + change < 3.0)) return false;
-        const auto f = [&](double w) { return angle_from_negative(curve_.value(w)); };
-        const double at_low = f(low), at_high = f(high);
-        if ((at_low > 0.0) != (at_high > 0.0) && (low > 0.0 || std::abs(at_low) > 1e-12)) {
-            const double w = root_between(f, low, high), gain = std::abs(curve_.value(w));
-            if (result_.phase_crossings.size() < most_crossings) result_.phase_crossings.push_back(w);
-            if (gain < 1.0) result_.largest_below_one = std::max(result_.largest_below_one, gain);
-            if (gain > 1.0 && (result_.smallest_above_one == 0.0 || gain < result_.smallest_above_one))
-                result_.smallest_above_one = gain;
-        }
+    bool settle_phase(const Piece& piece) {
+        const CrossingSearch found = crossings(curve_, piece, CrossingOf::phase);
+        if (!found.settled) return false;
+        for (int i = 0; i < found.count; ++i) take_phase_crossing(found.crossing[i]);
         return true;
     }
 
-    // X = L or 1/L in the middle of a piece, with the derivatives of its logarithm.
-    struct Middle {
-        std::complex<double> X, slope, bend;
-    };
-    struct Piece {
-        double h;  // half its width
-        CurveBounds bounds;
-        double gain_change;
-    };
+    void take_phase_crossing(const Crossing& c) {
+        const CurvePoint p = curve_.at(c.w);
+        const double gain = std::abs(curve_.value(c.w));
+        if (result_.phase_crossings.size() < most_crossings) result_.phase_crossings.push_back(c);
+        else result_.capped = true;
+        if (gain < 1.0) result_.largest_below_one = std::max(result_.largest_below_one, gain);
+        if (!(gain > 1.0)) return;
+        if (result_.smallest_above_one == 0.0 || gain < result_.smallest_above_one) result_.smallest_above_one = gain;
+        const int pair = c.w < curve_.end() ? 2 : 1;
+        if (c.touches) result_.crossings_clear = false;
+        else result_.crossed_by_gain += p.slope.imag() < 0.0 ? pair : -pair;
+    }
 
     // Is |1 + X| nowhere on the piece noticeably below the smallest found, and does it turn by less than
-    // half a circle? From the Taylor series of q = |1 + X|^2 with a bound on its third derivative.
-    static bool settle_near(const Middle& m, const Piece& p, const Closest& closest) noexcept {
-        if (!(p.gain_change < 50.0) || !(closest.distance > 0.0)) return false;
-        const double h = p.h, size = std::abs(m.X), growth = std::exp(p.gain_change);
-        const double enough = closest.distance * (1.0 - closed_to);
-        if (size / growth - 1.0 > enough && size > growth) {  // stays outside the circle around 0 of that radius ...
-            if (turn_below_half(size * growth, size / growth - 1.0, m, p)) return true;
-        } else if (1.0 - size * growth > enough) {            // ... or inside the one that keeps away from -1
-            return true;
+    // half a circle? From discs, or from the Taylor series of q = |1 + X|^2 with a bound on its third derivative.
+    bool settle_near(const Quantity& x, const Piece& piece, bool inverse) {
+        Closest& closest = inverse ? result_.inverse_to_minus_one : result_.to_minus_one;
+        if (!(closest.distance > through_minus_one)) return true;
+        const double h = piece.half_width(), size = size_of(x.value);
+        double change = piece.rest_change(x.slope.real());
+        if (m_ != 0) change += piece.low > 0.0 ? std::abs(m_) * h / piece.low : infinity;
+        if (change < 20.0) {
+            const double grows = growth(change), enough = closest.distance * (1.0 - 1e-12);
+            if (1.0 - size * grows > enough) return true;                                  // stays inside a circle around 0 ...
+            if (size - grows * (1.0 + enough) > 0.0 && (inverse || turn_is_small(x, piece, size * grows, size / grows - 1.0)))
+                return true;                                                               // ... or outside one
         }
-        const double steep = std::abs(m.slope) + p.bounds.bend * h;
-        const double X0 = size * growth, X1 = X0 * steep, X2 = X0 * (steep * steep + p.bounds.bend);
-        const double X3 = X0 * (steep * (steep * steep + 3.0 * p.bounds.bend) + p.bounds.twist);
-        const double F0 = std::min(1.0 + X0, std::abs(1.0 + m.X) + X1 * h);
-        const double third = 2.0 * (3.0 * X1 * X2 + F0 * X3);
-        const std::complex<double> dX = m.X * m.slope, ddX = m.X * (m.slope * m.slope + m.bend);
-        const double f_re = 1.0 + m.X.real(), f_im = m.X.imag();
-        const double q0 = f_re * f_re + f_im * f_im;
-        const double q1 = 2.0 * (f_re * dX.real() + f_im * dX.imag());
-        const double q2 = 2.0 * (std::norm(dX) + f_re * ddX.real() + f_im * ddX.imag());
-        double least = q0 - std::abs(q1) * h + 0.5 * q2 * h * h;
-        if (q2 > 0.0 && std::abs(q1) < q2 * h) least = q0 - 0.5 * q1 * q1 / q2;
-        least -= third * h * h * h / 6.0;
-        return least > enough * enough && turn_below_half(X0, std::sqrt(least), m, p);
+        const QuantityBounds b = bounds_of(x, piece);
+        const SquaredDistance s = squared_distance(x, piece.middle.w);
+        const double third = third_derivative(b, std::sqrt(s.q0), h), bound = least(s, third, h);
+        const double wanted = closest.distance * closest.distance;
+        double nearest = bound;
+        if (!(bound > wanted * (1.0 - 2e-12))) {
+            if (s.q2 > third * h) {  // convex: one minimum, which can be found
+                if (!(closest.inside && closest.frequency > piece.low && closest.frequency < piece.high))
+                    note(nearest_between(curve_, inverse, piece.low, piece.high, piece.middle.w), closest);
+                nearest = closest.distance * closest.distance;
+            } else if (!(bound > wanted * (1.0 - 2.0 * closed_to))) {
+                return false;
+            }
+        }
+        return inverse || 2.0 * h * b.X1 < 3.0 * std::sqrt(nearest);
     }
 
     // |d arg(1 + X)| <= |X'| / |1 + X| all along the piece.
-    static bool turn_below_half(double largest, double nearest, const Middle& m, const Piece& p) noexcept {
-        return 2.0 * p.h * largest * (std::abs(m.slope) + p.bounds.bend * p.h) < 3.0 * nearest;
+    bool turn_is_small(const Quantity& x, const Piece& piece, double largest, double nearest) const noexcept {
+        const double steep = size_of(x.slope) + piece.bounds.bend * piece.half_width() + (m_ != 0 ? std::abs(m_) / piece.low : 0.0);
+        return 2.0 * piece.half_width() * largest * steep < 3.0 * nearest;
     }
 
-    void finish() {
-        std::sort(result_.gain_crossings.begin(), result_.gain_crossings.end());
-        std::sort(result_.phase_crossings.begin(), result_.phase_crossings.end());
+    void finish(const End& last) {
+        // The path's own end is real: negative, it is a crossing.
+        if (is_finite(curve_.end()) && last.w >= curve_.end() && last.L.real() < -1e-6) take_phase_crossing({curve_.end(), false, 0.0});
+        const auto ascending = [](const Crossing& a, const Crossing& b) { return a.w < b.w; };
+        std::sort(result_.gain_crossings.begin(), result_.gain_crossings.end(), ascending);
+        std::sort(result_.phase_crossings.begin(), result_.phase_crossings.end(), ascending);
         polish(result_.to_minus_one, false);
         polish(result_.inverse_to_minus_one, true);
-        // From the last point to the value at infinity, within a disc around 1 or close to the limit.
-        if (curve_.relative_degree() > 0) result_.winding += std::arg(1.0 / last_);
-        else if (curve_.loop().dead_time() == 0.0) result_.winding += std::arg((1.0 + curve_.loop().leading_coefficient()) / last_);
-        else result_.winding += std::arg(1.0 / last_);
-    }
-
-    // The distance is stationary at its minimum: find where its slope changes sign.
-    void polish(Closest& closest, bool inverse) const {
-        const double w = closest.frequency;
-        if (!(w > 0.0) || !is_finite(w) || !(closest.distance > 1e-9)) return;
-        const auto slope = [&](double x) {
-            const CurvePoint p = curve_.at(x);
-            const std::complex<double> X = inverse ? 1.0 / p.L : p.L;
-            const std::complex<double> dX = inverse ? -X * p.slope : X * p.slope;
-            return ((1.0 + X.real()) * dX.real() + X.imag() * dX.imag());
-        };
-        for (double reach = 1e-4; reach < 0.6; reach *= 2.0) {
-            const double low = w * (1.0 - reach), high = w * (1.0 + reach);
-            if (!(slope(low) < 0.0) || !(slope(high) > 0.0)) continue;
-            const double best = root_between(slope, low, high);
-            const std::complex<double> L = curve_.value(best);
-            const double distance = std::abs(1.0 + (inverse ? 1.0 / L : L));
-            if (distance <= closest.distance) closest = {distance, best};
+        if (is_finite(curve_.end())) {
+            if (last.w < curve_.end()) result_.winding += turn_between(1.0 + last.L, 1.0 + curve_.value(curve_.end()));
             return;
         }
+        // From the last point to the value at infinity, within a disc around 1 or close to the limit.
+        result_.winding += std::arg((1.0 + curve_.limit()) / (1.0 + last.L));
     }
 
     const LoopCurve& curve_;
+    const LoopCurve* mirrored_;
+    int m_;
     SweepResult result_;
     std::complex<double> last_ = 1.0;
     std::size_t points_ = 0;
@@ -269,7 +317,7 @@ private:
 
 }  // namespace
 
-SweepResult sweep(const LoopCurve& curve) { return Walk(curve).run(); }
+SweepResult sweep(const LoopCurve& curve, const LoopCurve* mirrored) { return Walk(curve, mirrored).run(); }
 
 }  // namespace detail
 }  // namespace v0

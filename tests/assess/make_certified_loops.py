@@ -130,7 +130,7 @@ class Curve:
         total = -mp.mpf(self.dead_time) * w if side >= 0 and self.dead_time else mp.mpf(0)
         for s, T, z in self.exact:
             if side in (0, s):
-                end = mp.sign(T) * mp.pi / 2 if z is None else mp.sign(z) * mp.pi
+                end = mp.sign(T) * mp.pi / 2 if z is None else mp.pi if z >= 0 else -mp.pi
                 total += (s if side == 0 else 1) * (end if w == mp.inf else mp.atan(T * w) if z is None else
                                                     mp.atan2(2 * z * T * w, (1 - T * w) * (1 + T * w)))
         return total
@@ -151,6 +151,11 @@ class Curve:
             n, d = plus(times(n, below), times(above, d), count), times(d, below)
         b, g = dyadic(self.dead_time)
         return [refined(lambda w: self.at(w)[1].imag, *ends) for ends in positive_roots(plus([c << g for c in n], d, -b))]
+
+    def pieces(self, end):
+        """Intervals on which the phase only rises or only falls."""
+        points = [mp.mpf(0)] + [w for w in self.phase_turns() if w < end] + [end]
+        return zip(points, points[1:])
 
     def part(self, T, z, w):
         u = T * w
@@ -173,7 +178,7 @@ class Curve:
             low, high = np.minimum(gb - ga, 0), np.maximum(gb - ga, 0)
             if z is not None and 2 * z * z < 1:  # smallest on the way
                 w = math.sqrt(1 - 2 * z * z) / T
-                low = np.where((a < w) & (w < b), math.log(2 * abs(z) * math.sqrt(1 - z * z)) - ga, low)
+                low = np.where((a < w) & (w < b), (math.log(2 * abs(z) * math.sqrt(1 - z * z)) if z else -math.inf) - ga, low)
             fall, rise = (fall + low, rise + high) if s > 0 else (fall - high, rise - low)
             back, ahead = back + np.minimum(s * (pb - pa), 0), ahead + np.maximum(s * (pb - pa), 0)
         return (*self.polar(a), fall, rise, back, ahead)
@@ -184,8 +189,8 @@ def phase_crossings(curve, level=LEVEL):
     end = mp.inf if abs(curve.at_infinity) > float(level) else ends[-1] if ends else mp.mpf(0)
     if curve.dead_time and 2 * mp.pi * MOST / curve.dead_time < end:
         limit = end = 2 * mp.pi * MOST / curve.dead_time
-    points, found = [mp.mpf(0)] + [w for w in curve.phase_turns() if w < end] + [end], []
-    for a, b in zip(points, points[1:]):
+    found = []
+    for a, b in curve.pieces(end):
         low, high = sorted(2 * curve.turned(w) / mp.pi + curve.offset for w in (a, b))  # quarter turns
         turns = [k for k in range(int(mp.floor(low / 4)), int(mp.ceil(high / 4))) if low + small < 4 * k + 2 < high - small]
         wanted, rises, top = np.array([(2 * k + 1) * math.pi for k in turns]), curve.turned(b) > curve.turned(a), min(b, mp.mpf(1))
@@ -365,9 +370,9 @@ def text(x):
         return "{" + ", ".join(map(text, x)) + "}"
     return str(x) if isinstance(x, (int, str)) else "infinity" if x == mp.inf else repr(float(x))
 
-def analyzed(family, given, unstable_too):
+def analyzed(family, given, unstable_too, kind=Curve):
     """The row of a loop, and whether it is stable; None to leave it out."""
-    curve, pi = Curve(**given), mp.pi
+    curve, pi = kind(**given), mp.pi
     if curve.dead_time and abs(curve.at_infinity) >= 1:
         return None
     gains = curve.gain_crossings()
@@ -399,46 +404,30 @@ def analyzed(family, given, unstable_too):
     lists = [[crossing(w, a) for w, a in zip(gains, angles)], [crossing(w, f) for w, f in zip(phases, factors)]]
     given = [float(x) if i in (0, 7) else [float(T) for T in x] if i in (3, 4) else x for i, x in enumerate(curve.given)]
     rest = [poles, near[0], *([[], []] if poles else [margins, peaks]), limit]
-    return "    " + text(['"%s"' % family, *given, *rest, *("\n     " + text(x) for x in lists)]), poles == 0
+    return "    " + text(['"%s"' % family, given, *rest, *("\n     " + text(x) for x in lists)]), poles == 0
 
-def main():
-    r, rows = Draws(SEED), []
-    for draw, wanted in FAMILIES:
+def rows_of(families, seed, kind=Curve):
+    r, rows = Draws(seed), []
+    for draw, wanted in families:
         made = unstable_made = 0
         while made < wanted:
-            result = analyzed(draw.__name__, draw(r), unstable_made < 0.3 * wanted)
+            result = analyzed(draw.__name__, draw(r), unstable_made < 0.3 * wanted, kind)
             if result:
                 rows.append(result[0])
                 made, unstable_made = made + 1, unstable_made + (not result[1])
-        print(draw.__name__, made, "of them unstable", unstable_made, file=sys.stderr)
+        print(draw.__name__, made, "of them unstable", unstable_made, file=sys.stderr, flush=True)
+    return rows
+
+def main():
+    rows = rows_of(FAMILIES, SEED)
     print(HEADER % (SEED, ",\n".join(rows), len(rows)))
 
 HEADER = """// Made by make_certified_loops.py with seed %s; do not edit.
 #pragma once
 
-#include <initializer_list>
-#include <limits>
+#include "assess/certified_rows.hpp"
 
 namespace oracle {
-struct CertifiedPair { double time_constant, damping; };
-/// `value`: of a gain crossover the angle from -1, rad, counterclockwise; of a phase crossover 1/|L|. The slopes are
-/// d log|L| / d log w and d arg L / d log w, to two digits.
-struct CertifiedCrossing { double frequency, value, gain_slope, phase_slope; };
-struct CertifiedLoop {
-    const char* family;
-    double gain;
-    int integrators, zeros_at_origin;
-    std::initializer_list<double> leads, lags;
-    std::initializer_list<CertifiedPair> lead_pairs, lag_pairs;
-    double dead_time;
-    int unstable_poles;  ///< of the closed loop
-    double closest;      ///< smallest |1 + L|
-    std::initializer_list<double> margins;  ///< stable loops: gain, gain reduction, phase in degrees, delay
-    std::initializer_list<double> peaks;    ///< stable loops: Ms, its frequency, Mt, its frequency
-    double complete_to;  ///< below this frequency every phase crossover with |L| >= 1e-3 is listed
-    std::initializer_list<CertifiedCrossing> gain_crossings, phase_crossings;
-};
-constexpr double infinity = std::numeric_limits<double>::infinity();
 const CertifiedLoop certified_loops[] = {
 %s
 };  // %d loops

@@ -4,6 +4,7 @@
 #include "assess/loops.hpp"
 #include "assess/margins_data.hpp"
 #include "core/oracle_tools.hpp"
+#include "tauwright/assess/delay_budget.hpp"
 #include "tauwright/assess/robustness.hpp"
 
 using namespace tauwright;
@@ -112,20 +113,32 @@ TEST_CASE("C07, C08: what a wanted sensitivity peak implies", "[published]") {
     }
 }
 
-TEST_CASE("D11: half a scan stands in for the sampling", "[published]") {
-    // Trade fact D11 (derived, recomputed, 2e-3): K = 2, tau = 10, theta = 3, Kc = 10/12, Ti = 10, h = 1.
+TEST_CASE("D11 and D16: what sampling costs, and what half a scan of dead time tells of it", "[published]") {
+    // Trade facts D11 and D16 (derived, recomputed, 2e-3 and 1e-3): K = 2, tau = 10, theta = 3, Kc = 10/12, Ti = 10, h = 1.
     const auto G = first_order_plus_dead_time(2.0, 10.0, 3.0);
     const PidSettings s{.gain = 10.0 / 12.0, .integral_time = 10.0};
-    const auto continuous = robustness(G, s), sampled = robustness(G, s, {.scan_time = 1.0}), late = robustness(G, s, {.extra_delay = 0.5});
-    CHECK(relative_error(continuous.gain_margin.value(), 3.141607648999999) <= 2e-3);
-    CHECK(relative_error(continuous.phase_margin_deg.value(), 61.3520144735634) <= 2e-3);
-    CHECK(relative_error(continuous.max_sensitivity.value(), 1.5904902331329802) <= 2e-3);
-    CHECK(relative_error(sampled.gain_margin.value(), 2.692815129) <= 2e-3);
-    CHECK(relative_error(sampled.phase_margin_deg.value(), 56.57735021915728) <= 2e-3);
-    CHECK(relative_error(sampled.max_sensitivity.value(), 1.7404549239113878) <= 2e-3);
+    const struct { RobustnessOptions options; double GM, PM, Ms; } rows[] = {
+        {{}, 3.141607648999999, 61.3520144735634, 1.5904902331329802},
+        {{.extra_delay = 0.5}, 2.692815129, 56.57735021915728, 1.7404549239113878},
+        {{.scan_time = 1.0}, 2.566065737262941, 56.46702142536884, 1.7873060539373125},
+        {{.scan_time = 1.0, .extra_delay = 1.0}, 2.008281790260677, 46.55080731797952, 2.2074622801656756}};
+    for (const auto& row : rows) {
+        const auto r = robustness(G, s, row.options);
+        INFO("scan " << row.options.scan_time.value_or(0.0) << " s, extra delay " << row.options.extra_delay << " s");
+        CHECK(relative_error(r.gain_margin.value(), row.GM) <= 2e-3);
+        CHECK(relative_error(r.phase_margin_deg.value(), row.PM) <= 2e-3);
+        CHECK(relative_error(r.max_sensitivity.value(), row.Ms) <= 2e-3);
+    }
+    // Backward integration raises the working gain by h/(2 Ti) on top of half a scan of dead time.
+    const double half_scan = robustness(G, s, {.extra_delay = 0.5}).gain_margin.value();
+    CHECK(relative_error(half_scan / (1.0 + 1.0 / 20.0), 2.564585837142857) <= 1e-3);
+    CHECK(relative_error(robustness(G, s, {.scan_time = 1.0}).gain_margin.value(), half_scan / 1.05) <= 1e-3);
     // The closed form with theta 3.5 and a = 3.5 / 6.
-    CHECK(relative_error(sampled.gain_margin.value(), std::acos(-1.0) / 2.0 * 6.0 / 3.5) <= 1e-10);
-    CHECK(sampled == late);
+    CHECK(relative_error(half_scan, std::acos(-1.0) / 2.0 * 6.0 / 3.5) <= 1e-10);
+    // D10: effective dead time, with and without a scan of computation.
+    CHECK(delay_budget(G, s, {.scan_time = 1.0}).total() == 3.5);
+    CHECK(delay_budget(G, s, {.scan_time = 1.0, .extra_delay = 1.0}).total() == 4.5);
+    CHECK(relative_error(delay_budget(G, s, {.scan_time = 1.0}).working_gain, 1.05) <= 1e-15);
 }
 
 TEST_CASE("filters and extra delay are in the margins", "[closed form]") {

@@ -175,9 +175,12 @@ TEST_CASE("lag-free figures of simple loops", "[closed form]") {
     }
 }
 
-TEST_CASE("an open-loop pole on the axis away from rest is left undetermined", "[regression]") {
-    const auto r = robustness(loop({.gain = 0.5, .lag_pairs = {{1.0, 0.0}}, .dead_time = 0.1}));
-    CHECK(r.verdict == Verdict::undetermined);
-    CHECK_FALSE(r.stable.has_value());
-    CHECK_FALSE(r.unstable_poles.has_value());
+TEST_CASE("open-loop poles on the axis away from rest are followed", "[closed form]") {
+    // 0.5 exp(-0.1 s)/(s^2 + 1): 1 + L turns its pair to the right for every small dead time, to the left if the gain is negative.
+    CHECK(robustness(loop({.gain = 0.5, .lag_pairs = {{1.0, 0.0}}, .dead_time = 0.1})).unstable_poles == std::optional<int>(2));
+    CHECK(robustness(loop({.gain = -0.5, .lag_pairs = {{1.0, 0.0}}, .dead_time = 0.1})).verdict == Verdict::stable);
+    // (2 s + 0.5)/(s^2 + 1): s^2 + 2 s + 1.5.
+    CHECK(robustness(loop({.gain = 0.5, .leads = {4.0}, .lag_pairs = {{1.0, 0.0}}})).verdict == Verdict::stable);
+    // A zero on top of the pole hides an undamped mode.
+    CHECK(robustness(loop({.gain = 0.5, .lags = {1.0}, .lead_pairs = {{1.0, 0.0}}, .lag_pairs = {{1.0, 0.0}}})).verdict == Verdict::marginal);
 }

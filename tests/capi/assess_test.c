@@ -30,7 +30,7 @@ static void open_loop_margins(void) {
     OK(tauw_model_destroy(&loop));
 }
 
-/* Oracle: closed form, C G = 0.1 exp(-(theta + extra + half a scan) s) / s after the lag is cancelled. */
+/* Oracle: closed form, C G = 0.1 exp(-(theta + extra) s) / s after the lag is cancelled; sampled, trade fact D11 (published). */
 static void process_and_settings(void) {
     tauw_model* process = NULL;
     tauw_pid_settings settings;
@@ -45,14 +45,20 @@ static void process_and_settings(void) {
     settings.integral_time = 10.0;
     OK(tauw_robustness_of(process, &settings, NULL, &r, &error));
     CHECK_NEAR(r.gain_margin, PI / (2.0 * 0.1 * 2.0), 1e-9);
-    options.has_scan_time = 1;
-    options.scan_time = 1.0;
-    options.extra_delay = 0.5;
+    options.extra_delay = 1.0;
     OK(tauw_robustness_of(process, &settings, &options, &r, &error));
     CHECK_NEAR(r.gain_margin, PI / (2.0 * 0.1 * 3.0), 1e-9);
+    options.has_scan_time = 1;
     options.scan_time = 0.0;
     CHECK_STATUS(tauw_robustness_of(process, &settings, &options, &r, &error), TAUW_ERROR_OUT_OF_DOMAIN);
     CHECK_NEAR(r.gain_margin, PI / (2.0 * 0.1 * 3.0), 1e-9);
+    OK(tauw_model_destroy(&process));
+    OK(tauw_first_order_plus_dead_time(2.0, 10.0, 3.0, &process, &error));
+    settings.gain = 10.0 / 12.0;
+    options.scan_time = 1.0;
+    options.extra_delay = 0.0;
+    OK(tauw_robustness_of(process, &settings, &options, &r, &error));
+    CHECK_NEAR(r.gain_margin, 2.566065737262941, 2e-3);
     OK(tauw_model_destroy(&process));
 }
 

@@ -5,6 +5,7 @@
 #include <optional>
 #include <vector>
 
+#include "tauwright/control/internal_model_controller.hpp"
 #include "tauwright/control/pid_response.hpp"
 #include "tauwright/model/transfer_function.hpp"
 
@@ -28,6 +29,8 @@ struct GainCrossover {
     double frequency_rad_s = 0.0;
     double phase_margin_deg = 0.0;  ///< angle from -1, 0 to 180, whichever direction
     double delay_margin = 0.0;    ///< dead time that would bring the loop through -1 here
+    bool touches = false;         ///< the gain reaches 1 without passing it, as far as rounding tells
+    double error_bound = 0.0;     ///< rad/s, of a touch: between two crossings and none lies this much
 
     friend bool operator==(const GainCrossover&, const GainCrossover&) = default;
 };
@@ -36,8 +39,17 @@ struct GainCrossover {
 struct PhaseCrossover {
     double frequency_rad_s = 0.0;
     double gain_factor = 0.0;  ///< factor on the gain that would bring the loop through -1 here
+    bool touches = false;      ///< the loop reaches the negative real axis without passing it
+    double error_bound = 0.0;  ///< rad/s, of a touch
 
     friend bool operator==(const PhaseCrossover&, const PhaseCrossover&) = default;
+};
+
+/// An interval of dead times, s.
+struct DelayRange {
+    double low = 0.0, high = 0.0;  ///< `high` may be infinite
+
+    friend bool operator==(const DelayRange&, const DelayRange&) = default;
 };
 
 /// What the open loop L says of the closed loop. Of a loop that is not stable, margins and peaks are
@@ -56,26 +68,45 @@ struct Robustness {
     std::optional<double> max_complementary_sensitivity_frequency = {};  ///< rad/s; 0 where at rest
     std::vector<GainCrossover> gain_crossovers = {};
     std::vector<PhaseCrossover> phase_crossovers = {};  ///< as far as they matter: at most 1000
+    bool phase_crossovers_capped = false;               ///< there are more, infinitely many where the loop keeps gain at high frequency
+    /// Lowest frequency at which |S| rises through 1/sqrt(2), and highest at which |T| falls through it,
+    /// rad/s; empty for none. Source: Skogestad and Postlethwaite, Multivariable Feedback Control, 2005, 2.4.
+    std::optional<double> sensitivity_bandwidth = {}, complementary_bandwidth = {};
+    std::optional<double> delay_reduction_margin = {};  ///< smallest reduction of the dead time that destabilizes; infinite for none
+    /// All dead times of the process with which this controller is stable (of the open loop, where that is all
+    /// there is); ascending, from at most 20,000 changes. Empty for sampled loops.
+    std::vector<DelayRange> stable_dead_times = {};
+    bool fragile = false;  ///< an arbitrarily small error of the dead time can destabilize
 
     friend bool operator==(const Robustness&, const Robustness&);
 };
 
 struct RobustnessOptions {
-    std::optional<double> scan_time = {};  ///< half of it stands in for sampling and hold as dead time
-    double extra_delay = 0.0;              ///< dead time added to the loop
+    /// The loop as it runs at this scan time: the block's own differences, the output held over each scan.
+    std::optional<double> scan_time = {};
+    double extra_delay = 0.0;  ///< dead time added to the loop; one scan for a controller that answers a scan late
 };
 
-/// Of an open loop as it is. Frequencies, gains and peaks to about 1e-10 relative; crossings are
-/// found by pieces proved monotone, peaks by enclosures closed to 1e-7 and then polished. Two
-/// independent stability tests must agree: the winding of 1 + L around 0, and the poles without
-/// dead time followed as it grows (Walton and Marshall, IEE Proc. D 134, 1987). Open-loop poles on
-/// the imaginary axis other than at 0 give `undetermined`. Allocates.
+/// Of an open loop as it is, exact dead time included. Every piece of the imaginary axis is proved free
+/// of a crossing, or monotone or convex with what it can hold; peaks are enclosed and closed by proofs of
+/// convexity. Frequencies, gains and peaks to about 1e-12 relative (1e-10 where the curve passes within
+/// 1e-3 of -1). Two counts of the closed loop's poles that know nothing of each other must agree:
+/// the winding of 1 + L, and the poles without dead time followed as it grows (Walton and Marshall,
+/// IEE Proc. D 134, 1987); else `undetermined`. Allocates.
 Robustness robustness(const TransferFunction& open_loop);
 
-/// Of process and settings, every filter included. A zero of the process at s = 0 against integral
+/// Of process and settings, every filter included. With a scan time the figures are those of the
+/// sampled loop, on frequencies up to half the sampling frequency; `unstable_poles` are then those outside the unit
+/// circle, and delay margins are exact where they are whole scans. A zero of the process at s = 0 against integral
 /// action is `marginal`: the loop hides a pole at 0. Throws `not_finite`, `out_of_domain`, and what
 /// `require(settings)` says.
 Robustness robustness(const TransferFunction& process, const PidSettings& settings, const RobustnessOptions& options = {});
+
+/// Of a process and the exact synthesized controller, which holds its model's dead time: where the
+/// process differs from the model there are two dead times. Its own right-half-plane poles (roots of 1 - T) are
+/// counted first. `options.scan_time` must be empty (`out_of_domain`).
+Robustness robustness(const TransferFunction& process, const InternalModelController& controller,
+                      const RobustnessOptions& options = {});
 
 }  // namespace v0
 }  // namespace tauwright

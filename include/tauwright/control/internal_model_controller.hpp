@@ -53,6 +53,9 @@ public:
     /// Integrating actions: the order to which 1 - T vanishes at s = 0.
     int integrators() const noexcept { return order_at_origin_; }
 
+    /// Coefficients in s, lowest power first, of (1 - T) times T's denominator; the first `integrators()` are 0.
+    const detail::Polynomial& denominator_series() const noexcept { return series_; }
+
     /// Value at a complex s in rad/s. Relative error about 1e-14 away from poles, also near s = 0.
     std::complex<double> operator()(std::complex<double> s) const noexcept {
         if (s == 0.0 && order_at_origin_ > 0)
