@@ -1,100 +1,203 @@
 #include "tauwright/assess/simulate.hpp"
 
+#include <algorithm>
 #include <cmath>
 
-#include "assess/noise.hpp"
-#include "tauwright/discretize/process.hpp"
+#include "assess/driven_process.hpp"
 #include "tauwright/run/pid_block.hpp"
 
 namespace tauwright {
 inline namespace v0 {
 
-bool operator==(const Duty&, const Duty&) = default;
-bool operator==(const Figures&, const Figures&) = default;
+namespace {
 
-void check(const Duty& duty) {
-    const struct { const char* name; double value; } numbers[] = {
-        {"duty.setpoint_step", duty.setpoint_step}, {"duty.load_step", duty.load_step},
-        {"duty.rest_output", duty.resting_output()}, {"duty.rest_process_value", duty.resting_process_value()},
-        {"duty.output_low", duty.output_low},       {"duty.output_high", duty.output_high}};
-    for (const auto& number : numbers) detail::require_finite(number.name, number.value);
-    detail::require_not_negative("duty.noise", duty.noise);
-    detail::require_not_negative("duty.load_time", duty.load_time);
-    if (duty.scan_time) detail::require_positive("duty.scan_time", *duty.scan_time);
-    if (!(duty.output_low < duty.output_high))
-        detail::refuse(error_code::out_of_domain, "duty.output_high", duty.output_high,
-                       "give a high limit above the low one, " + text_of(duty.output_low));
-    if (!(duty.output_low <= duty.resting_output() && duty.resting_output() <= duty.output_high))
-        detail::refuse(error_code::out_of_domain, "duty.rest_output", duty.resting_output(),
-                       "give a rest output within the limits " + text_of(duty.output_low) + " to " + text_of(duty.output_high));
+using detail::DrivenProcess;
+
+constexpr double run_away = 1e60;
+
+// How much of a step that begins at `start` is made at `t`, 0 to 1.
+double progress(double t, double start, double ramp_time) noexcept {
+    if (ramp_time == 0.0) return t >= start * (1.0 - 1e-12) ? 1.0 : 0.0;
+    return std::clamp((t - start) / ramp_time, 0.0, 1.0);
 }
+
+bool load_ramps(const Duty& duty) noexcept { return duty.load_step != 0.0 && duty.load_ramp_time > 0.0; }
+
+// The lag is in the plant; what is left of the transmitter is noise and quantization.
+TransmitterSettings converter_of(const Duty& duty) noexcept { return {.resolution = duty.transmitter.resolution}; }
+
+std::size_t count_of_scans(double scan_time, double horizon_s) {
+    detail::require_positive("horizon", horizon_s);
+    const double scans = std::floor(horizon_s / scan_time * (1.0 + 1e-12));
+    if (!(scans >= 1.0))
+        detail::refuse(error_code::out_of_domain, "horizon", horizon_s,
+                       detail::joined({"duty.scan_time is ", text_of(scan_time),
+                                       " s, longer than this; give a horizon of at least two scans"}));
+    if (!(scans >= 2.0) || !(scans <= 1e7))
+        detail::refuse(error_code::out_of_domain, "horizon", horizon_s,
+                       detail::joined({"give from two to ten million scans of ", text_of(scan_time), " s"}));
+    return static_cast<std::size_t>(scans) + 1;
+}
+
+// Time, set point and load are known beforehand.
+Trend prepared(const Duty& duty, double h, std::size_t n) {
+    Trend trend;
+    trend.duty = duty;
+    const double rest = duty.resting_process_value();
+    trend.time_s.resize(n);
+    for (std::size_t k = 0; k < n; ++k) trend.time_s[k] = static_cast<double>(k) * h;
+    trend.setpoint.assign(n, rest + duty.setpoint_step);
+    if (duty.setpoint_ramp_time > 0.0)
+        for (std::size_t k = 0; k < n; ++k)
+            trend.setpoint[k] = rest + duty.setpoint_step * progress(trend.time_s[k], 0.0, duty.setpoint_ramp_time);
+    trend.load.resize(n);
+    if (duty.load_step != 0.0)
+        for (std::size_t k = 0; k < n; ++k)
+            trend.load[k] = duty.load_step * progress(trend.time_s[k], duty.load_time, duty.load_ramp_time);
+    for (std::size_t k = 0; k < std::min(n, duty.disturbance.size()); ++k) trend.load[k] += duty.disturbance[k];
+    for (auto* column : {&trend.process_value, &trend.output, &trend.measured, &trend.valve_position}) column->resize(n);
+    return trend;
+}
+
+void cut(Trend& trend, std::size_t n) {
+    trend.ran_away = true;
+    for (auto* column : {&trend.time_s, &trend.setpoint, &trend.process_value, &trend.output, &trend.measured,
+                         &trend.valve_position, &trend.load})
+        column->resize(n);
+}
+
+// A ramp of the load changes within the scan: its response is that of process / s to the ramp's slope, which is
+// constant over a scan.
+class LoadRamp {
+public:
+    LoadRamp(const TransferFunction& process, const Duty& duty, double h)
+        : duty_(duty), scan_time_(h), response_(process * TransferFunction::from_factors({.integrators = 1}), h, 0.0, 0.0) {}
+
+    /// The change of the process value that the ramp has made at the end of scan k.
+    double step(std::size_t k) noexcept { return response_.step((at(k + 1) - at(k)) / scan_time_); }
+    double at(std::size_t k) const noexcept {
+        return duty_.load_step * progress(static_cast<double>(k) * scan_time_, duty_.load_time, duty_.load_ramp_time);
+    }
+
+private:
+    const Duty& duty_;
+    double scan_time_;
+    DrivenProcess response_;
+};
+
+// What a process answers to valve and load: the way to its own value, or through the transmitter's lag.
+class Plant {
+public:
+    Plant(const TransferFunction& process, const Duty& duty, double h)
+        : to_valve_(process, h, duty.resting_output(), duty.resting_process_value()) {
+        if (load_ramps(duty)) ramp_.emplace(process, duty, h);
+    }
+
+    /// One scan; returns the value at its end.
+    double step(double position, double load, std::size_t k) noexcept {
+        if (!ramp_) return to_valve_.step(position + load);
+        const double held_load = load - ramp_->at(k);
+        const double answer = to_valve_.step(position + held_load);
+        return answer + ramp_->step(k);
+    }
+
+private:
+    DrivenProcess to_valve_;
+    std::optional<LoadRamp> ramp_;
+};
+
+void check_order(const TransferFunction& process, const Duty& duty) {
+    const bool lag = duty.transmitter.lag > 0.0, ramp = load_ramps(duty);
+    const int most = 20 - (lag ? 1 : 0) - (ramp ? 1 : 0);
+    if (process.order() > most)
+        detail::refuse(error_code::out_of_domain, "process order", process.order(),
+                       detail::joined({"give a process of order up to ", text_of(most), lag ? " with a transmitter lag" : "",
+                                       ramp ? " with a ramp of the load" : ""}));
+    if (process.relative_degree() < 0)
+        detail::refuse(error_code::out_of_domain, "process relative degree", process.relative_degree(),
+                       "give a process with at least as many lags as leads");
+}
+
+run::PidBlock controller_of(const PidSettings& settings, const Duty& duty, double h) {
+    run::PidCoefficients coefficients = discretize(settings, h);
+    if (duty.output_rate_limit) coefficients.output_change_per_scan = *duty.output_rate_limit * h;
+    return {coefficients, duty.output_low, duty.output_high, duty.resting_output()};
+}
+
+// The one loop over scans. `measure` makes the measured value of the process value, `move` the valve position of the
+// output, `answer` the next process value of position, load and scan.
+template <class Measure, class Move, class Answer>
+void run_scans(Trend& trend, run::PidBlock controller, Measure measure, Move move, Answer answer) {
+    const std::size_t n = trend.size();
+    const double rest = trend.duty.resting_process_value();
+    const double* const setpoint = trend.setpoint.data();
+    double value = rest;
+    std::uint32_t flags = 0;
+    for (std::size_t k = 0; k < n; ++k) {
+        const double measured = measure(value), output = controller.step(setpoint[k], measured), position = move(output);
+        trend.process_value[k] = value;
+        trend.measured[k] = measured;
+        trend.output[k] = output;
+        trend.valve_position[k] = position;
+        flags |= controller.flags();
+        value = answer(position, trend.load[k], k);
+        if (!(std::abs(value - rest) <= run_away) && k + 1 < n) {
+            cut(trend, k + 1);
+            break;
+        }
+    }
+    trend.limited = (flags & (run::flag_limited_low | run::flag_limited_high)) != 0;
+}
+
+// Nothing but controller and process of a named form: the common case, free of everything else.
+void run_plain(Trend& trend, const run::PidBlock& controller, const TransferFunction& process, double h) {
+    const Duty& duty = trend.duty;
+    run::ProcessBlock block(discretize(process, h), duty.resting_output(), duty.resting_process_value());
+    std::vector<double> line(run::delay_line_length(block.coefficients()));
+    block.start(line.data(), line.size());
+    const auto same = [](double x) { return x; };
+    run_scans(trend, controller, same, same, [&, memory = line.data()](double position, double load, std::size_t) {
+        return block.step(position + load, memory);
+    });
+}
+
+void run_full(Trend& trend, const run::PidBlock& controller, const TransferFunction& process, double h) {
+    const Duty& duty = trend.duty;
+    const double rest = duty.resting_process_value();
+    Plant plant(process, duty, h);
+    std::optional<Plant> behind_lag;
+    if (duty.transmitter.lag > 0.0)
+        behind_lag.emplace(process * TransferFunction::from_factors({.lags = {duty.transmitter.lag}}), duty, h);
+    run::Transmitter transmitter(discretize(converter_of(duty), h, duty.noise, duty.seed), rest);
+    run::Valve valve(discretize(duty.valve, h, duty.output_low, duty.output_high), duty.resting_output());
+    double lagged = rest;
+    run_scans(
+        trend, controller, [&](double value) { return transmitter.step(behind_lag ? lagged : value); },
+        [&](double output) { return valve.step(output); },
+        [&](double position, double load, std::size_t k) {
+            if (behind_lag) lagged = behind_lag->step(position, load, k);
+            return plant.step(position, load, k);
+        });
+}
+
+}  // namespace
 
 Trend simulate(const TransferFunction& process, const PidSettings& settings, const Duty& duty, double horizon_s) {
     check(duty);
     detail::require_positive("horizon", horizon_s);
     if (!duty.scan_time)
         throw Error(error_code::missing_argument, "duty.scan_time is not given; the simulated controller needs one");
-    const double h = *duty.scan_time, scans = std::floor(horizon_s / h * (1.0 + 1e-12));
-    if (!(scans >= 2.0) || !(scans <= 1e7))
-        detail::refuse(error_code::out_of_domain, "horizon", horizon_s,
-                       "give from two to ten million scans of " + text_of(h) + " s");
-    run::PidBlock controller(discretize(settings, h), duty.output_low, duty.output_high, duty.resting_output());
-    run::ProcessBlock plant(discretize(process, h), duty.resting_output(), duty.resting_process_value());
-    std::vector<double> line(run::delay_line_length(plant.coefficients()));
-    plant.start(line.data(), line.size());
-    controller.step(duty.resting_process_value(), duty.resting_process_value());  // at rest before time 0
+    const double h = *duty.scan_time, rest = duty.resting_process_value();
+    const std::size_t n = count_of_scans(h, horizon_s);
+    check_order(process, duty);
+    run::PidBlock controller = controller_of(settings, duty, h);
+    controller.step(rest, run::Transmitter(discretize(converter_of(duty), h), rest).step(rest));  // at rest before time 0
 
-    Trend trend;
-    trend.duty = duty;
-    const auto n = static_cast<std::size_t>(scans) + 1;
-    for (auto* column : {&trend.time_s, &trend.setpoint, &trend.process_value, &trend.output}) column->reserve(n);
-    detail::Noise noise(duty.seed);
-    const double setpoint = duty.resting_process_value() + duty.setpoint_step;
-    double value = duty.resting_process_value();
-    for (std::size_t k = 0; k < n; ++k) {
-        const double t = static_cast<double>(k) * h;
-        const double measured = duty.noise > 0.0 ? value + duty.noise * noise.next() : value;
-        const double output = controller.step(setpoint, measured);
-        trend.time_s.push_back(t);
-        trend.setpoint.push_back(setpoint);
-        trend.process_value.push_back(value);
-        trend.output.push_back(output);
-        trend.limited |= (controller.flags() & (run::flag_limited_low | run::flag_limited_high)) != 0;
-        // The load acts where the output does, without the output's limits.
-        const bool loaded = t >= duty.load_time * (1.0 - 1e-12);
-        value = plant.step(output + (loaded ? duty.load_step : 0.0), line.data());
-    }
+    Trend trend = prepared(duty, h, n);
+    const bool plain = duty.valve.perfect() && duty.transmitter.perfect() && duty.noise == 0.0 && !load_ramps(duty);
+    if (plain && detail::fits_process_block(process)) run_plain(trend, controller, process, h);
+    else run_full(trend, controller, process, h);
     return trend;
-}
-
-Figures figures(const Trend& trend) {
-    Figures f;
-    const std::size_t n = trend.size();
-    if (n < 2) return f;
-    const Duty& duty = trend.duty;
-    const double step = duty.setpoint_step, h = trend.time_s[1] - trend.time_s[0];
-    double previous = duty.resting_output(), highest = 0.0;
-    // A load step later on is another story than the set-point step.
-    const bool load_follows = duty.load_step != 0.0 && duty.load_time > 0.0;
-    std::size_t outside = 0, followed = 0;  // one past the last sample outside the band; samples looked at
-    for (std::size_t k = 0; k < n; ++k) {
-        const double error = trend.setpoint[k] - trend.process_value[k];
-        f.integrated_absolute_error += std::abs(error) * h;
-        f.valve_travel += std::abs(trend.output[k] - previous);
-        previous = trend.output[k];
-        if (step != 0.0 && !(load_follows && trend.time_s[k] > duty.load_time)) {
-            followed = k + 1;
-            highest = std::max(highest, -error / step);
-            if (std::abs(error) > 0.02 * std::abs(step)) outside = k + 1;
-        }
-        if (duty.load_step != 0.0 && trend.time_s[k] >= duty.load_time)
-            f.peak_load_error = std::max(f.peak_load_error.value_or(0.0), std::abs(error));
-    }
-    if (step != 0.0) {
-        f.overshoot_percent = 100.0 * highest;
-        if (outside < followed) f.settling_time = trend.time_s[outside];
-    }
-    return f;
 }
 
 }  // namespace v0

@@ -200,5 +200,22 @@ TEST_CASE("what cannot be simulated is refused", "[regression]") {
     check_refused(error_code::out_of_domain, {"horizon"}, [&] { simulate(G, s, with([](Duty&) {}), 1e9); });
     check_refused(error_code::not_finite, {"horizon", "inf"}, [&] { simulate(G, s, with([](Duty&) {}), std::numeric_limits<double>::infinity()); });
     check_refused(error_code::out_of_domain, {"settings.gain"}, [&] { simulate(G, {}, with([](Duty&) {}), 10.0); });
-    check_refused(error_code::unsupported_form, {"process"}, [&] { simulate(G * G * G, s, with([](Duty&) {}), 10.0); });
+    check_refused(error_code::out_of_domain, {"horizon", "5", "duty.scan_time", "8"}, [&] { simulate(G, s, with([](Duty& d) { d.scan_time = 8.0; }), 5.0); });
+    check_refused(error_code::out_of_domain, {"horizon", "5", "3"}, [&] { simulate(G, s, with([](Duty& d) { d.scan_time = 3.0; }), 5.0); });
+    check_refused(error_code::out_of_domain, {"duty.valve.stick", "-0.5"}, [&] { simulate(G, s, with([](Duty& d) { d.valve.stick = -0.5; }), 10.0); });
+    check_refused(error_code::out_of_domain, {"duty.valve.dead_band", "-1"}, [&] { simulate(G, s, with([](Duty& d) { d.valve.dead_band = -1.0; }), 10.0); });
+    check_refused(error_code::not_finite, {"duty.valve.resolution", "nan"}, [&] { simulate(G, s, with([](Duty& d) { d.valve.resolution = std::nan(""); }), 10.0); });
+    check_refused(error_code::out_of_domain, {"duty.valve.travel_rate_per_s", "0"}, [&] { simulate(G, s, with([](Duty& d) { d.valve.travel_rate_per_s = 0.0; }), 10.0); });
+    check_refused(error_code::out_of_domain, {"duty.transmitter.lag", "-2"}, [&] { simulate(G, s, with([](Duty& d) { d.transmitter.lag = -2.0; }), 10.0); });
+    check_refused(error_code::out_of_domain, {"duty.transmitter.resolution", "-2"}, [&] { simulate(G, s, with([](Duty& d) { d.transmitter.resolution = -2.0; }), 10.0); });
+    check_refused(error_code::out_of_domain, {"duty.setpoint_ramp_time", "-3"}, [&] { simulate(G, s, with([](Duty& d) { d.setpoint_ramp_time = -3.0; }), 10.0); });
+    check_refused(error_code::out_of_domain, {"duty.load_ramp_time", "-3"}, [&] { simulate(G, s, with([](Duty& d) { d.load_ramp_time = -3.0; }), 10.0); });
+    check_refused(error_code::out_of_domain, {"duty.output_rate_limit", "0"}, [&] { simulate(G, s, with([](Duty& d) { d.output_rate_limit = 0.0; }), 10.0); });
+    check_refused(error_code::not_finite, {"duty.disturbance[2]", "nan"}, [&] { simulate(G, s, with([](Duty& d) { d.disturbance = {0.0, 1.0, std::nan("")}; }), 10.0); });
+    check_refused(error_code::out_of_domain, {"duty.load_step", "1e+200"}, [&] { simulate(G, s, with([](Duty& d) { d.load_step = 1e200; }), 10.0); });
+    check_refused(error_code::out_of_domain, {"process order", "21"}, [&] { simulate(TransferFunction::from_factors({.lags = std::vector<double>(21, 1.0)}), s, with([](Duty&) {}), 10.0); });
+    const auto high = TransferFunction::from_factors({.lags = std::vector<double>(20, 0.2)});
+    CHECK(simulate(high, s, with([](Duty&) {}), 10.0).size() == 101);
+    check_refused(error_code::out_of_domain, {"process order", "20", "up to 19", "transmitter lag"}, [&] { simulate(high, s, with([](Duty& d) { d.transmitter.lag = 1.0; }), 10.0); });
+    check_refused(error_code::out_of_domain, {"relative degree", "-1"}, [&] { simulate(TransferFunction::from_factors({.leads = {1.0}}), s, with([](Duty&) {}), 10.0); });
 }
