@@ -21,7 +21,9 @@ write_basic_package_version_file(${CMAKE_CURRENT_BINARY_DIR}/tauwright-config-ve
 install(FILES ${CMAKE_CURRENT_BINARY_DIR}/tauwright-config.cmake ${CMAKE_CURRENT_BINARY_DIR}/tauwright-config-version.cmake
   DESTINATION ${CMAKE_INSTALL_LIBDIR}/cmake/tauwright)
 
-# pkg-config, relative to where the file lies, so that the tree may be moved.
+# pkg-config, relative to where the file lies, so that the tree may be moved, with the thread library
+# that the static library needs.
+find_package(Threads REQUIRED)
 file(RELATIVE_PATH tauwright_prefix_from_pc "${CMAKE_INSTALL_FULL_LIBDIR}/pkgconfig" "${CMAKE_INSTALL_PREFIX}")
 foreach(name tauwright tauwright-c)
   if(name STREQUAL "tauwright-c" AND NOT TAUWRIGHT_C)

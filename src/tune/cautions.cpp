@@ -108,7 +108,13 @@ void add_called_for(const TuningSheet& sheet, std::vector<std::string>& list) {
         const double h = *sheet.duty.scan_time;
         if (h > sheet.fit.dead_time / 3.0 || h > *sheet.proposed->settings.integral_time / 10.0)
             list.push_back("The scan is slow for these settings (more than a third of the dead time or a tenth of the integral "
-                           "time); margins rest on half a scan standing in for it.");
+                           "time): the margins are those of the sampled loop, but a shorter scan would allow faster ones.");
+    }
+    for (const auto* controller : {&sheet.proposed, &sheet.as_found}) {
+        if (!*controller || !(*controller)->valve_cycle || (*controller)->valve_cycle->existence == CycleExistence::none) continue;
+        list.push_back("Valve, " + std::string(controller == &sheet.proposed ? "with the proposed settings: " : "as found: ") +
+                       (*controller)->valve_cycle->reason + ".");
+        break;
     }
     if (sheet.fit.form == Form::integrating_plus_dead_time)
         list.push_back("Integrating process: if this is a level, decide between tight and averaging control. Check that no "

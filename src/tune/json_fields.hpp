@@ -1,7 +1,8 @@
 // One description of every structure on the sheet, from which both writing and reading follow.
 //
 // `describe(visitor, object)` calls visitor("key", member) for each member. The writer and the reader
-// are two such visitors, so that no field can be written and not read.
+// are two such visitors, so that no field can be written and not read. Members that version 2 of the sheet added
+// go through `visitor.since_2`: a sheet of version 1 leaves them at their defaults.
 #pragma once
 
 #include "tauwright/tune/tuning_sheet.hpp"
@@ -138,11 +139,20 @@ template <class Visitor, class T> void describe_gain_crossover(Visitor& v, T& x)
     v("frequency_rad_s", x.frequency_rad_s);
     v("phase_margin_deg", x.phase_margin_deg);
     v("delay_margin_s", x.delay_margin);
+    v.since_2("touches", x.touches);
+    v.since_2("error_bound_rad_s", x.error_bound);
 }
 
 template <class Visitor, class T> void describe_phase_crossover(Visitor& v, T& x) {
     v("frequency_rad_s", x.frequency_rad_s);
     v("gain_factor", x.gain_factor);
+    v.since_2("touches", x.touches);
+    v.since_2("error_bound_rad_s", x.error_bound);
+}
+
+template <class Visitor, class T> void describe_delay_range(Visitor& v, T& x) {
+    v("low_s", x.low);
+    v("high_s", x.high);
 }
 
 template <class Visitor, class T> void describe_robustness(Visitor& v, T& x) {
@@ -159,6 +169,12 @@ template <class Visitor, class T> void describe_robustness(Visitor& v, T& x) {
     v("max_complementary_sensitivity_frequency_rad_s", x.max_complementary_sensitivity_frequency);
     v("gain_crossovers", x.gain_crossovers);
     v("phase_crossovers", x.phase_crossovers);
+    v.since_2("phase_crossovers_capped", x.phase_crossovers_capped);
+    v.since_2("sensitivity_bandwidth_rad_s", x.sensitivity_bandwidth);
+    v.since_2("complementary_bandwidth_rad_s", x.complementary_bandwidth);
+    v.since_2("delay_reduction_margin_s", x.delay_reduction_margin);
+    v.since_2("stable_dead_times", x.stable_dead_times);
+    v.since_2("fragile", x.fragile);
 }
 
 template <class Visitor, class T> void describe_figures(Visitor& v, T& x) {
@@ -167,6 +183,14 @@ template <class Visitor, class T> void describe_figures(Visitor& v, T& x) {
     v("peak_load_error", x.peak_load_error);
     v("integrated_absolute_error", x.integrated_absolute_error);
     v("valve_travel", x.valve_travel);
+    v.since_2("rise_time_s", x.rise_time);
+    v.since_2("decay_ratio", x.decay_ratio);
+    v.since_2("peak_load_error_time_s", x.peak_load_error_time);
+    v.since_2("integrated_squared_error", x.integrated_squared_error);
+    v.since_2("integrated_time_absolute_error", x.integrated_time_absolute_error);
+    v.since_2("integrated_error", x.integrated_error);
+    v.since_2("reversals", x.reversals);
+    v.since_2("time_at_limits_s", x.time_at_limits);
 }
 
 template <class Visitor, class T> void describe_speed(Visitor& v, T& x) {
@@ -186,6 +210,27 @@ template <class Visitor, class T> void describe_obstacle(Visitor& v, T& x) {
     v("repair", x.repair);
 }
 
+template <class Visitor, class T> void describe_valve(Visitor& v, T& x) {
+    v("dead_band", x.dead_band);
+    v("stick", x.stick);
+    v("resolution", x.resolution);
+    v("travel_rate_per_s", x.travel_rate_per_s);
+}
+
+template <class Visitor, class T> void describe_transmitter(Visitor& v, T& x) {
+    v("lag_s", x.lag);
+    v("resolution", x.resolution);
+}
+
+template <class Visitor, class T> void describe_valve_cycle(Visitor& v, T& x) {
+    v("existence", x.existence);
+    v("period_s", x.period);
+    v("process_value_amplitude", x.process_value_amplitude);
+    v("output_amplitude", x.output_amplitude);
+    v("reason", x.reason);
+    v("retuning_cures", x.retuning_cures);
+}
+
 template <class Visitor, class T> void describe_duty(Visitor& v, T& x) {
     v("setpoint_step", x.setpoint_step);
     v("load_step", x.load_step);
@@ -197,6 +242,12 @@ template <class Visitor, class T> void describe_duty(Visitor& v, T& x) {
     v("output_high", x.output_high);
     v("rest_output", x.rest_output);
     v("rest_process_value", x.rest_process_value);
+    v.since_2("setpoint_ramp_time_s", x.setpoint_ramp_time);
+    v.since_2("load_ramp_time_s", x.load_ramp_time);
+    v.since_2("output_rate_limit_per_s", x.output_rate_limit);
+    v.since_2("valve", x.valve);
+    v.since_2("transmitter", x.transmitter);
+    v.since_2("disturbance", x.disturbance);
 }
 
 template <class Visitor, class T> void describe_controller(Visitor& v, T& x) {
@@ -204,6 +255,7 @@ template <class Visitor, class T> void describe_controller(Visitor& v, T& x) {
     v("entered", x.entered);
     v("margins", x.margins);
     v("figures", x.figures);
+    v.since_2("valve_cycle", x.valve_cycle);
 }
 
 template <class Visitor, class T> void describe_sheet(Visitor& v, T& x) {
@@ -246,6 +298,10 @@ TAUWRIGHT_DETAIL_DESCRIBED(Entered, describe_entered)
 TAUWRIGHT_DETAIL_DESCRIBED(GainCrossover, describe_gain_crossover)
 TAUWRIGHT_DETAIL_DESCRIBED(PhaseCrossover, describe_phase_crossover)
 TAUWRIGHT_DETAIL_DESCRIBED(Robustness, describe_robustness)
+TAUWRIGHT_DETAIL_DESCRIBED(DelayRange, describe_delay_range)
+TAUWRIGHT_DETAIL_DESCRIBED(ValveSettings, describe_valve)
+TAUWRIGHT_DETAIL_DESCRIBED(TransmitterSettings, describe_transmitter)
+TAUWRIGHT_DETAIL_DESCRIBED(ValveCycle, describe_valve_cycle)
 TAUWRIGHT_DETAIL_DESCRIBED(Figures, describe_figures)
 TAUWRIGHT_DETAIL_DESCRIBED(SpeedChoice, describe_speed)
 TAUWRIGHT_DETAIL_DESCRIBED(Obstacle, describe_obstacle)

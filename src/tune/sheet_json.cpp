@@ -30,6 +30,7 @@ template <class T> Json written(const T& x);
 struct Writer {
     Json object = Json::object();
     template <class T> void operator()(const char* key, const T& x) { object[key] = written(x); }
+    template <class T> void since_2(const char* key, const T& x) { object[key] = written(x); }
 };
 
 template <class T> Json written(const T& x) {
@@ -59,30 +60,34 @@ template <class T> Json written(const T& x) {
                                                 "; give a document that tauwright wrote");
 }
 
-template <class T> void read(const Json& json, const std::string& path, T& x);
+template <class T> void read(const Json& json, const std::string& path, int version, T& x);
 
 struct Reader {
     const Json& object;
     const std::string& path;
+    int version;
+    template <class T> void since_2(const char* key, T& x) {
+        if (version >= 2) (*this)(key, x);
+    }
     template <class T> void operator()(const char* key, T& x) {
         const auto it = object.find(key);
         if (it == object.end()) malformed(path + "/" + key, "is missing");
-        read(*it, path + "/" + key, x);
+        read(*it, path + "/" + key, version, x);
     }
 };
 
-template <class T> void read(const Json& json, const std::string& path, T& x) {
+template <class T> void read(const Json& json, const std::string& path, int version, T& x) {
     if constexpr (is_optional<T>::value) {
         using Value = typename T::value_type;
         if (json.is_null()) {
             x.reset();
         } else if constexpr (std::is_same_v<Value, TransferFunction>) {
             Factors factors;
-            read(json, path, factors);
+            read(json, path, version, factors);
             x = TransferFunction::from_factors(std::move(factors));
         } else {
             Value value{};
-            read(json, path, value);
+            read(json, path, version, value);
             x = std::move(value);
         }
     } else if constexpr (is_list<T>::value) {
@@ -90,7 +95,7 @@ template <class T> void read(const Json& json, const std::string& path, T& x) {
         x.clear();
         for (std::size_t i = 0; i < json.size(); ++i) {
             typename T::value_type item{};
-            read(json[i], path + "/" + std::to_string(i), item);
+            read(json[i], path + "/" + std::to_string(i), version, item);
             x.push_back(std::move(item));
         }
     } else if constexpr (std::is_same_v<T, double>) {
@@ -116,7 +121,7 @@ template <class T> void read(const Json& json, const std::string& path, T& x) {
         x = json.get<std::string>();
     } else {
         if (!json.is_object()) malformed(path, "is not an object");
-        Reader reader{json, path};
+        Reader reader{json, path, version};
         describe(reader, x);
     }
 }
@@ -154,13 +159,15 @@ std::string text_of_json(const Json& json, int indent) {
 TuningSheet sheet_of(const Json& document) {
     if (!document.is_object()) malformed("", "is not an object");
     const auto schema = document.find("schema"), number = document.find("schema_version");
-    if (schema == document.end() || *schema != sheet_schema || number == document.end() || *number != sheet_schema_version)
+    const bool known = schema != document.end() && *schema == sheet_schema && number != document.end() &&
+                       (*number == 1 || *number == sheet_schema_version);
+    if (!known)
         throw Error(error_code::schema_unsupported,
-                    "the document's schema is not " + std::string(sheet_schema) + " version " +
+                    "the document's schema is not " + std::string(sheet_schema) + " version 1 or " +
                         std::to_string(sheet_schema_version) + "; give a sheet, or read it with the library version that wrote it");
     TuningSheet sheet;
     try {
-        read(document, "", sheet);
+        read(document, "", number->get<int>(), sheet);
     } catch (const Error& e) {
         if (e.code() == error_code::file_malformed) throw;
         malformed("", std::string("holds an impossible value (") + e.what() + ")");

@@ -12,7 +12,7 @@ namespace detail {
 using Json = nlohmann::ordered_json;
 
 constexpr const char* sheet_schema = "tauwright-tuning-sheet";
-constexpr int sheet_schema_version = 1;
+constexpr int sheet_schema_version = 2;  // 1 is still read
 
 Json json_of(const TuningSheet& sheet);
 TuningSheet sheet_of(const Json& document);

@@ -3,68 +3,20 @@
 #include <string>
 
 #include "tauwright/tune/tuning_sheet.hpp"
+#include "tune/controller_cells.hpp"
+#include "tune/page.hpp"
 
 namespace tauwright {
 inline namespace v0 {
 
 namespace {
 
-constexpr std::size_t width = 78, label_width = 26;
-
-std::string shown(double x, int digits = 5) { return is_finite(x) ? text_of(x, digits) : "unknown"; }
-
-class Page {
-public:
-    void title(const std::string& text) { out_ += text + "\n" + std::string(width, '=') + "\n"; }
-    void section(const std::string& text) { out_ += "\n" + text + "\n" + std::string(width, '-') + "\n"; }
-    void item(std::string label, const std::string& text) {
-        label.resize(std::max(label_width, label.size() + 1), ' ');
-        wrapped(label, text, label_width);
-    }
-    void bullet(const std::string& mark, const std::string& text) { wrapped(mark + " ", text, mark.size() + 1); }
-    // Three columns: what, as found, proposed.
-    void row(std::string label, std::string left, const std::string& right) {
-        label.resize(std::max(label_width, label.size() + 1), ' ');
-        left.resize(std::max<std::size_t>(24, left.size() + 1), ' ');
-        line(label + left + right);
-    }
-    void line(std::string text) {
-        while (!text.empty() && text.back() == ' ') text.pop_back();
-        out_ += text + "\n";
-    }
-    std::string take() { return std::move(out_); }
-
-private:
-    void wrapped(const std::string& first, const std::string& text, std::size_t indent) {
-        std::string current = first;
-        std::size_t begin = 0;
-        bool empty = true;
-        while (begin < text.size()) {
-            const std::size_t end = std::min(text.find(' ', begin), text.size());
-            const std::string word = text.substr(begin, end - begin);
-            if (!empty && current.size() + 1 + word.size() > width) {
-                line(current);
-                current.assign(indent, ' ');
-                empty = true;
-            }
-            if (!empty) current += ' ';
-            current += word;
-            empty = false;
-            begin = end + 1;
-        }
-        line(current);
-    }
-    std::string out_;
-};
+using namespace detail;
 
 std::string with_error(const FittedModel& fit, double value, const char* key, const std::string& unit) {
     std::string text = shown(value);
     if (const auto error = fit.standard_error(key)) text += " +- " + shown(*error, 2);
     return unit.empty() ? text : text + " " + unit;
-}
-
-std::string unit_of(const std::optional<Range>& range, const char* fallback) {
-    return range && !range->unit.empty() ? range->unit : fallback;
 }
 
 void write_input(Page& page, const TuningSheet& s) {
@@ -139,86 +91,6 @@ void write_speed(Page& page, const TuningSheet& s) {
         page.item(name_of(o.code), std::string(name_of(o.severity)) + ": " + o.message + ". Instead: " + o.repair);
 }
 
-struct Cell {
-    std::string label, text;
-};
-
-std::string optional_text(const std::optional<double>& x, const std::string& unit, const char* absent) {
-    if (!x) return absent;
-    if (!is_finite(*x)) return "no limit";
-    return shown(*x) + (is_finite(*x) && !unit.empty() ? " " + unit : "");
-}
-
-// The fields as the controller shows them; without a form, the settings themselves.
-std::vector<Cell> fields_of(const TuningSheet& s, const SheetController& c) {
-    std::vector<Cell> cells;
-    const auto add = [&](const char* label, const std::optional<double>& x, const std::string& unit) {
-        // As keyed in: every digit.
-        if (x) cells.push_back({label, text_of(*x) + (unit.empty() ? "" : " " + unit)});
-    };
-    const PidSettings& p = c.settings;
-    if (!c.entered || !s.form) {
-        cells.push_back({"Gain", shown(p.gain, 6) + " " + s.gain_unit});
-        if (p.gain == 0.0) cells.push_back({"Integral gain", shown(p.integral_gain_per_s(), 6) + " 1/s"});
-        else cells.push_back({"Integral time", p.integral_time ? shown(*p.integral_time, 6) + " s" : "none"});
-        cells.push_back({"Derivative time", shown(p.derivative_time, 6) + " s"});
-        if (p.derivative_time > 0.0) cells.push_back({"Derivative filter time", shown(p.filter_time, 6) + " s"});
-    } else {
-        const Entered& e = *c.entered;
-        const std::string ti = s.form->integral_unit == TimeUnit::minutes ? "min" : "s";
-        const std::string td = s.form->derivative_unit == TimeUnit::minutes ? "min" : "s";
-        add("Gain", e.gain, s.form->gain_unit == GainUnit::percent
-                                ? "%/%"
-                                : unit_of(s.output_range, "output unit") + " per " + unit_of(s.process_value_range, "unit"));
-        add("Proportional band", e.proportional_band, "%");
-        add("Integral time", e.integral_time, ti);
-        add("Repeats", e.repeats, "per " + ti);
-        add("Integral gain", e.integral_gain, "per " + ti);
-        add("Derivative time", e.derivative_time, td);
-        add("Derivative gain", e.derivative_gain, td);
-        add("Derivative filter time", e.filter_time, td);
-        add("Derivative filter ratio", e.filter_ratio, "");
-        cells.push_back({"Action", s.form->action_as == ActionAs::sign ? "by the sign of the gain" : name_of(e.action)});
-    }
-    add("Measurement filter", p.measurement_filter_time, "s");
-    add("Set-point weight", p.setpoint_weight, "");
-    return cells;
-}
-
-std::vector<Cell> margins_of(const SheetController& c) {
-    const Robustness& m = c.margins;
-    std::vector<Cell> cells{{"Verdict", name_of(m.verdict)},
-                            {"Gain margin", optional_text(m.gain_margin, "", "-")},
-                            {"Gain reduction margin", m.gain_reduction_margin == 0.0 ? "no limit" : optional_text(m.gain_reduction_margin, "", "-")},
-                            {"Phase margin", optional_text(m.phase_margin_deg, "deg", "-")},
-                            {"Delay margin", optional_text(m.delay_margin, "s", "-")},
-                            {"Largest sensitivity Ms", optional_text(m.max_sensitivity, "", "-")},
-                            {"Largest |T|, Mt", optional_text(m.max_complementary_sensitivity, "", "-")}};
-    if (c.figures) {
-        const Figures& f = *c.figures;
-        if (f.overshoot_percent) {
-            cells.push_back({"Overshoot", optional_text(f.overshoot_percent, "%", "-")});
-            cells.push_back({"Settling time (2 %)", optional_text(f.settling_time, "s", "not in the trend")});
-        }
-        if (f.peak_load_error) cells.push_back({"Peak load error", optional_text(f.peak_load_error, "% of span", "-")});
-        cells.push_back({"Integrated abs. error", shown(f.integrated_absolute_error) + " % s"});
-        cells.push_back({"Valve travel", shown(f.valve_travel) + " %"});
-    }
-    return cells;
-}
-
-void write_side_by_side(Page& page, const std::vector<Cell>& found, const std::vector<Cell>& proposed) {
-    std::vector<std::string> labels;
-    for (const auto* list : {&proposed, &found})
-        for (const Cell& c : *list)
-            if (std::find(labels.begin(), labels.end(), c.label) == labels.end()) labels.push_back(c.label);
-    const auto text = [](const std::vector<Cell>& list, const std::string& label) {
-        const auto it = std::find_if(list.begin(), list.end(), [&](const Cell& c) { return c.label == label; });
-        return it == list.end() ? std::string("-") : it->text;
-    };
-    for (const std::string& label : labels) page.row(label, text(found, label), text(proposed, label));
-}
-
 void write_controllers(Page& page, const TuningSheet& s) {
     page.section("Settings");
     if (!s.form) page.item("Controller", "ideal form, Kc (e + 1/Ti integral e + Td de/dt), since no form was given");
@@ -230,8 +102,12 @@ void write_controllers(Page& page, const TuningSheet& s) {
         for (const std::string& reason : s.withheld) page.bullet("  *", reason);
     }
     if (!s.as_found && !s.proposed) return;
-    const auto fields = [&](const std::optional<SheetController>& c) { return c ? fields_of(s, *c) : std::vector<Cell>{}; };
-    const auto margins = [&](const std::optional<SheetController>& c) { return c ? margins_of(*c) : std::vector<Cell>{}; };
+    const auto fields = [&](const std::optional<SheetController>& c) {
+        return c ? setting_cells(c->settings, c->entered, s.form, s.gain_unit) : std::vector<Cell>{};
+    };
+    const auto margins = [&](const std::optional<SheetController>& c) {
+        return c ? margin_cells(c->margins, c->figures) : std::vector<Cell>{};
+    };
     page.row("", "as found (roll back to)", s.proposed ? "proposed: ENTER THESE" : "proposed");
     write_side_by_side(page, fields(s.as_found), fields(s.proposed));
     page.section("Margins of these numbers, with scan and every filter, and trend figures");

@@ -6,16 +6,12 @@
 #include "tauwright/core/version.hpp"
 #include "tauwright/model/forms.hpp"
 #include "tune/cautions.hpp"
+#include "tune/default_speed.hpp"
 
 namespace tauwright {
 inline namespace v0 {
 
 namespace {
-
-// Margins below which settings need somebody's name (common practice, no source).
-constexpr double weak_max_sensitivity = 2.0, weak_gain_margin = 1.7, weak_phase_margin_deg = 30.0;
-
-std::string short_text(double x) { return text_of(x, 4); }
 
 // The range that record and form agree on.
 std::optional<Range> agreed(const std::optional<Range>& record, const std::optional<Range>& form, const char* name) {
@@ -90,24 +86,12 @@ SpeedChoice choose_speed(const TuningSheet& sheet, const TuningRequest& request)
         speed.reason = "asked for";
         return speed;
     }
-    struct Floor {
-        double seconds;
-        const char* reason;
-    };
-    std::vector<Floor> floors;
-    if (fit.form == Form::integrating_plus_dead_time) {
-        floors.push_back({3.0 * D, "three times the effective dead time"});
-    } else {
-        floors.push_back({D, "the effective dead time"});
-        floors.push_back({0.1 * fit.lags[0], "a tenth of the lag"});
-    }
-    floors.push_back({3.0 * scan, "three scans"});
-    if (const auto error = fit.standard_error("dead_time"))
-        floors.push_back({2.0 * *error, "two standard errors of the dead time"});
-    const auto slowest = std::max_element(floors.begin(), floors.end(),
-                                          [](const Floor& a, const Floor& b) { return a.seconds < b.seconds; });
-    speed.time_constant = slowest->seconds;
-    speed.reason = slowest->reason;
+    const detail::DefaultSpeed chosen =
+        detail::default_speed({.integrating = fit.form == Form::integrating_plus_dead_time, .effective_dead_time = D,
+                               .lag = fit.lags.empty() ? 0.0 : fit.lags[0], .scan_time = scan,
+                               .dead_time_error = fit.standard_error("dead_time")});
+    speed.time_constant = chosen.time_constant;
+    speed.reason = chosen.reason;
     return speed;
 }
 
@@ -121,9 +105,7 @@ std::optional<PidSettings> designed(TuningSheet& sheet) {
     if (!synthesis.settings) return std::nullopt;
     PidSettings settings = *synthesis.settings;
     settings.measurement_filter_time = speed.measurement_filter_time;
-    const double limit = 4.0 * (speed.time_constant + D);
-    if (sheet.fit.form == Form::first_order_plus_dead_time && settings.integral_time && *settings.integral_time > limit) {
-        settings.integral_time = limit;
+    if (sheet.fit.form == Form::first_order_plus_dead_time && detail::limit_integral_time(settings, speed.time_constant, D)) {
         sheet.speed->integral_time_limited = true;
         // The lag is no longer cancelled, so the load response does not drag.
         std::erase_if(sheet.obstacles, [](const Obstacle& o) { return o.code == ObstacleCode::slow_pole_cancelled; });
@@ -134,7 +116,7 @@ std::optional<PidSettings> designed(TuningSheet& sheet) {
 std::optional<Figures> figures_of(const TuningSheet& sheet, const PidSettings& settings) {
     const Duty& duty = sheet.duty;
     const bool percent = sheet.process_value_range && sheet.output_range;
-    if (!duty.scan_time || !percent || (duty.setpoint_step == 0.0 && duty.load_step == 0.0)) return std::nullopt;
+    if (!duty.scan_time || !percent || (duty.setpoint_step == 0.0 && duty.load_step == 0.0 && duty.disturbance.empty())) return std::nullopt;
     const double horizon = trend_horizon(sheet);
     if (horizon > 1e6 * *duty.scan_time) return std::nullopt;  // more scans than a trend is worth
     return figures(simulate(*sheet.model, settings, duty, horizon));
@@ -144,18 +126,9 @@ SheetController assessed(const TuningSheet& sheet, const PidSettings& settings, 
     SheetController c{.settings = settings, .entered = entered};
     c.margins = robustness(*sheet.model, settings, {.scan_time = sheet.duty.scan_time});
     if (c.margins.verdict == Verdict::stable) c.figures = figures_of(sheet, settings);
+    const ValveSettings& valve = sheet.duty.valve;
+    if (valve.dead_band > 0.0 || valve.stick > 0.0 || valve.resolution > 0.0) c.valve_cycle = valve_cycle(*sheet.model, settings, valve);
     return c;
-}
-
-std::string weakness_of(const Robustness& m) {
-    if (m.verdict != Verdict::stable) return std::string("the loop would be ") + name_of(m.verdict);
-    if (*m.max_sensitivity > weak_max_sensitivity)
-        return "the largest sensitivity is " + short_text(*m.max_sensitivity) + ", above " + short_text(weak_max_sensitivity);
-    if (*m.gain_margin < weak_gain_margin)
-        return "the gain margin is " + short_text(*m.gain_margin) + ", below " + short_text(weak_gain_margin);
-    if (*m.phase_margin_deg < weak_phase_margin_deg)
-        return "the phase margin is " + short_text(*m.phase_margin_deg) + " degrees, below " + short_text(weak_phase_margin_deg);
-    return {};
 }
 
 void propose(TuningSheet& sheet, const TuningRequest& request) {
@@ -178,7 +151,7 @@ void propose(TuningSheet& sheet, const TuningRequest& request) {
         }
     }
     const SheetController proposal = assessed(sheet, *settings, entered);
-    const std::string weakness = weakness_of(proposal.margins);
+    const std::string weakness = detail::weakness_of(proposal.margins);
     if (!weakness.empty()) {
         if (proposal.margins.verdict != Verdict::stable || request.accept_weak_margins_by.empty()) {
             sheet.withheld.push_back(weakness + (proposal.margins.verdict == Verdict::stable
@@ -195,10 +168,7 @@ void propose(TuningSheet& sheet, const TuningRequest& request) {
 
 double trend_horizon(const TuningSheet& sheet) {
     if (!sheet.speed) return 0.0;
-    const double settle = 8.0 * (sheet.speed->time_constant + sheet.speed->effective_dead_time);
-    const double both = sheet.duty.load_step != 0.0 ? sheet.duty.load_time + settle : settle;
-    const double scan = sheet.duty.scan_time.value_or(0.0);
-    return std::max({settle, both, 2.0 * scan});
+    return detail::horizon_for(sheet.duty, sheet.speed->time_constant, sheet.speed->effective_dead_time);
 }
 
 TuningSheet tune(const Record& record, const TuningRequest& request) {

@@ -1,4 +1,6 @@
 #include <algorithm>
+#include <fstream>
+#include <iterator>
 
 #include "catch_compat.hpp"
 #include "identify/simulated.hpp"
@@ -196,6 +198,37 @@ TEST_CASE("a sheet survives JSON to the last bit", "[invariant]") {
     CHECK(std::any_of(changed.begin(), changed.end(), [](const SheetDifference& d) { return d.path == "/as_found" || d.path.starts_with("/as_found/"); }));
 }
 
+TEST_CASE("a sheet of version 1 is still read", "[regression]") {
+    // Written by the library before version 2, which added members; those keep their defaults.
+    const std::string path = std::string(__FILE__).substr(0, std::string(__FILE__).rfind("tune/")) + "fuzz/sheet_json_fuzz_corpus/version_1.json";
+    std::ifstream file(path);
+    REQUIRE(file);
+    const std::string old{std::istreambuf_iterator<char>(file), {}};
+    REQUIRE_THAT(old, ContainsSubstring("\"schema_version\": 1"));
+    const TuningSheet sheet = TuningSheet::from_json(old);
+    REQUIRE(sheet.proposed);
+    CHECK(sheet.proposed->margins.verdict == Verdict::stable);
+    CHECK_FALSE(sheet.proposed->margins.sensitivity_bandwidth.has_value());
+    CHECK_FALSE(sheet.proposed->valve_cycle);
+    const TuningSheet again = TuningSheet::from_json(sheet.json());
+    CHECK(differences(sheet, again).empty());
+}
+
+TEST_CASE("a sheet says what no retuning will cure", "[published]") {
+    // Sticking under integral action never settles (trade fact H02); a perfect valve has no cycle to tell of.
+    const auto washed = [](const ValveSettings& valve) {
+        return tune(ranged_record(), {.form = seconds_form(), .duty = Duty{.setpoint_step = 4.0, .scan_time = 0.5, .valve = valve}});
+    };
+    const TuningSheet sheet = washed({.stick = 1.0});
+    REQUIRE(sheet.proposed);
+    REQUIRE(sheet.proposed->valve_cycle);
+    CHECK(sheet.proposed->valve_cycle->existence == CycleExistence::persists);
+    CHECK_FALSE(sheet.proposed->valve_cycle->retuning_cures);
+    CHECK_THAT(sheet.text(), ContainsSubstring("Valve, with the proposed settings:"));
+    CHECK(TuningSheet::from_json(sheet.json()).proposed->valve_cycle == sheet.proposed->valve_cycle);
+    CHECK_FALSE(washed({}).proposed->valve_cycle);
+}
+
 TEST_CASE("documents that are no sheet are refused with the place", "[closed form]") {
     const std::string json = tune(ranged_record()).json();
     const auto refused = [](const std::string& text) {
@@ -215,7 +248,7 @@ TEST_CASE("documents that are no sheet are refused with the place", "[closed for
     CHECK_THAT(refused(""), Catch::Matchers::StartsWith("file_malformed"));
     CHECK_THAT(refused("[]"), ContainsSubstring("not an object"));
     CHECK_THAT(refused("{}"), Catch::Matchers::StartsWith("schema_unsupported"));
-    CHECK_THAT(changed("\"schema_version\": 1", "\"schema_version\": 2"), Catch::Matchers::StartsWith("schema_unsupported"));
+    CHECK_THAT(changed("\"schema_version\": 2", "\"schema_version\": 3"), Catch::Matchers::StartsWith("schema_unsupported"));
     CHECK_THAT(changed("\"r_squared\"", "\"r_squares\""), ContainsSubstring("/fit/r_squared is missing"));
     CHECK_THAT(changed("\"first_order_plus_dead_time\"", "\"tenth_order\""), ContainsSubstring("/fit/form is not one of the words"));
     CHECK_THAT(changed("\n    \"lags_s\": [\n      ", "\n    \"lags_s\": [], \"unused\": [\n      "), ContainsSubstring("/fit/lags_s does not belong"));

@@ -35,6 +35,6 @@ def test_every_sheet_keeps_the_schema(name, sheet):
 
 def test_the_schema_notices_what_does_not_belong():
     document = json.loads(tw.tune(tw.Record([0, 1, 2], [5, 5, 5], [1, 1, 1])).json())
-    for change in ({"advice": "tune"}, {"schema_version": 2}, {"input_sha256": "0"}, {"gain_unit": 1}):
+    for change in ({"advice": "tune"}, {"schema_version": 3}, {"input_sha256": "0"}, {"gain_unit": 1}):
         with pytest.raises(jsonschema.ValidationError):
             jsonschema.Draft202012Validator(SCHEMA).validate(document | change)

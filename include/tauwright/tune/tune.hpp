@@ -4,6 +4,7 @@
 #include <optional>
 #include <string>
 
+#include "tauwright/tune/audit.hpp"
 #include "tauwright/tune/tuning_sheet.hpp"
 
 namespace tauwright {

@@ -8,6 +8,7 @@
 
 #include "tauwright/assess/robustness.hpp"
 #include "tauwright/assess/simulate.hpp"
+#include "tauwright/assess/valve_cycle.hpp"
 #include "tauwright/control/entered.hpp"
 #include "tauwright/identify/identify.hpp"
 #include "tauwright/synthesize/synthesize.hpp"
@@ -21,6 +22,7 @@ struct SheetController {
     std::optional<Entered> entered = {};      ///< in the controller's form
     Robustness margins = {};                  ///< with scan time and every filter
     std::optional<Figures> figures = {};      ///< of the trend under the duty; empty without a scan time
+    std::optional<ValveCycle> valve_cycle = {};  ///< what the duty's valve makes of the loop; empty for a perfect one
 };
 
 /// How fast the loop was asked to be, and why.
@@ -61,10 +63,10 @@ struct TuningSheet {
 
     /// Plain text, 78 columns, ASCII but for names and units given by the caller.
     std::string text() const;
-    /// JSON (RFC 8259), schema "tauwright-tuning-sheet" version 1, stable key order; the schema file
+    /// JSON (RFC 8259), schema "tauwright-tuning-sheet" version 2, stable key order; the schema file
     /// is src/tune/tuning_sheet.schema.json. Infinite margins are the word "infinite".
     std::string json() const;
-    /// Reads what `json` wrote. Throws `file_malformed` (not JSON, a member missing, of the wrong kind, or
+    /// Reads what `json` wrote, of version 1 as well. Throws `file_malformed` (not JSON, a member missing, of the wrong kind, or
     /// at odds with another) or `schema_unsupported`, with the place. Allocates.
     static TuningSheet from_json(std::string_view json);
 };
