@@ -16,6 +16,7 @@ constexpr double infinity = std::numeric_limits<double>::infinity();
 constexpr double closed_to = 1e-7;            // enclosures of peaks close to this, relative, where no proof of convexity helps
 constexpr std::size_t most_points = 400'000;  // looked at before the sweep gives up
 constexpr std::size_t most_crossings = 1000;
+constexpr double look_ratio = 2.5;            // from one look in advance to the next
 
 struct Todo {
     bool gain = true, phase = true, near_L = true, near_inverse = true;
@@ -41,7 +42,7 @@ public:
         End last{low, low > 0.0 ? curve_.at(low).L : curve_.low_gain()};
         start_winding(last.L);
         std::size_t next_axis = 0;
-        double factor = 2.0;
+        double factor = 3.0;
         while (!finished(last.w)) {
             const std::size_t before = points_;
             double high = std::min({last.w > 0.0 ? factor * last.w : first_step(), last.w + widest(), curve_.end(), result_.tail});
@@ -120,7 +121,7 @@ private:
         if (!is_finite(corner) || corner <= 0.0) corner = 1.0;
         double stop = std::max(10.0 * curve_.largest_root(), curve_.fastest_turn() > 0.0 ? 6.0 / curve_.fastest_turn() : 0.0);
         stop = std::min({std::max(stop, 100.0 * corner), 1e6 * corner, curve_.end()});
-        for (double w = 0.1 * corner; w < stop; w *= 1.6) {
+        for (double w = 0.1 * corner; w < stop; w *= look_ratio) {
             const std::complex<double> L = curve_.at(w).L;
             look(L, w);
             if (norm(L) < 0.01 && w > curve_.largest_root()) break;
@@ -132,7 +133,7 @@ private:
     void polish(Closest& closest, bool inverse) noexcept {
         const double w = closest.frequency;
         if (!(w > 0.0) || !is_finite(w) || closest.inside) return;
-        const Closest polished = nearest_between(curve_, inverse, w / 1.6, std::min(1.6 * w, curve_.end()), w);
+        const Closest polished = nearest_between(curve_, inverse, w / look_ratio, std::min(look_ratio * w, curve_.end()), w);
         if (polished.distance <= closest.distance) closest = polished;
     }
 

@@ -173,13 +173,14 @@ bool all_finite(const Figures& f) {
 
 void add_figures(AuditRow& row, const TransferFunction& process, const AuditLoop& loop, const Speed& speed) {
     const Duty& duty = loop.duty;
-    if (!duty.scan_time || (duty.setpoint_step == 0.0 && duty.load_step == 0.0)) return;
+    if (!duty.scan_time || (duty.setpoint_step == 0.0 && duty.load_step == 0.0 && duty.disturbance.empty())) return;
     const double horizon = loop.horizon.value_or(detail::horizon_for(duty, speed.time_constant, speed.effective_dead_time));
     if (!loop.horizon && !(horizon <= most_scans * *duty.scan_time)) return;
     for (auto* side : {&row.in_service, &row.proposal}) {
         if (!*side || (*side)->margins.verdict != Verdict::stable) continue;
-        const Figures found = figures(simulate(process, (*side)->settings, duty, horizon));
-        if (!all_finite(found))
+        const Trend trend = simulate(process, (*side)->settings, duty, horizon);
+        const Figures found = figures(trend);
+        if (trend.ran_away || !all_finite(found))
             detail::refuse(error_code::out_of_domain, "horizon", horizon,
                            "the trend runs away within it: give a shorter one, or smaller steps");
         (*side)->figures = found;

@@ -231,6 +231,20 @@ template <class Visitor, class T> void describe_valve_cycle(Visitor& v, T& x) {
     v("retuning_cures", x.retuning_cures);
 }
 
+template <class Visitor, class T> void describe_worst_case(Visitor& v, T& x) {
+    v("verdict", x.verdict);
+    v("certified", x.certified);
+    v("max_sensitivity", x.max_sensitivity);
+    v("max_sensitivity_bound", x.max_sensitivity_bound);
+    v("gain_margin", x.gain_margin);
+    v("gain_margin_bound", x.gain_margin_bound);
+    v("phase_margin_deg", x.phase_margin_deg);
+    v("phase_margin_deg_bound", x.phase_margin_deg_bound);
+    v("delay_margin_s", x.delay_margin);
+    v("delay_margin_bound_s", x.delay_margin_bound);
+    v("at", x.at);
+}
+
 template <class Visitor, class T> void describe_duty(Visitor& v, T& x) {
     v("setpoint_step", x.setpoint_step);
     v("load_step", x.load_step);
@@ -255,6 +269,7 @@ template <class Visitor, class T> void describe_controller(Visitor& v, T& x) {
     v("entered", x.entered);
     v("margins", x.margins);
     v("figures", x.figures);
+    v.since_2("worst_case", x.worst_case);
     v.since_2("valve_cycle", x.valve_cycle);
 }
 
@@ -302,6 +317,7 @@ TAUWRIGHT_DETAIL_DESCRIBED(DelayRange, describe_delay_range)
 TAUWRIGHT_DETAIL_DESCRIBED(ValveSettings, describe_valve)
 TAUWRIGHT_DETAIL_DESCRIBED(TransmitterSettings, describe_transmitter)
 TAUWRIGHT_DETAIL_DESCRIBED(ValveCycle, describe_valve_cycle)
+TAUWRIGHT_DETAIL_DESCRIBED(WorstCase, describe_worst_case)
 TAUWRIGHT_DETAIL_DESCRIBED(Figures, describe_figures)
 TAUWRIGHT_DETAIL_DESCRIBED(SpeedChoice, describe_speed)
 TAUWRIGHT_DETAIL_DESCRIBED(Obstacle, describe_obstacle)

@@ -77,14 +77,18 @@ struct Reader {
 };
 
 template <class T> void read(const Json& json, const std::string& path, int version, T& x) {
-    if constexpr (is_optional<T>::value) {
+    if constexpr (std::is_same_v<T, TransferFunction>) {
+        Factors factors;
+        read(json, path, version, factors);
+        x = TransferFunction::from_factors(std::move(factors));
+    } else if constexpr (is_optional<T>::value) {
         using Value = typename T::value_type;
         if (json.is_null()) {
             x.reset();
         } else if constexpr (std::is_same_v<Value, TransferFunction>) {
-            Factors factors;
-            read(json, path, version, factors);
-            x = TransferFunction::from_factors(std::move(factors));
+            Value value = TransferFunction::from_factors({});
+            read(json, path, version, value);
+            x = std::move(value);
         } else {
             Value value{};
             read(json, path, version, value);

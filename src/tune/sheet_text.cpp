@@ -4,6 +4,7 @@
 
 #include "tauwright/tune/tuning_sheet.hpp"
 #include "tune/controller_cells.hpp"
+#include "tune/fit_worst_case.hpp"
 #include "tune/page.hpp"
 
 namespace tauwright {
@@ -113,6 +114,11 @@ void write_controllers(Page& page, const TuningSheet& s) {
     page.section("Margins of these numbers, with scan and every filter, and trend figures");
     page.row("", "as found", "proposed");
     write_side_by_side(page, margins(s.as_found), margins(s.proposed));
+    const auto worst = [](const std::optional<SheetController>& c) { return c ? worst_case_cells(c->worst_case) : std::vector<Cell>{}; };
+    if (worst(s.as_found).empty() && worst(s.proposed).empty()) return;
+    page.section("Worst case over the fit's 95 % confidence region, half a scan for the sampling");
+    page.row("", "as found", "proposed");
+    write_side_by_side(page, worst(s.as_found), worst(s.proposed));
 }
 
 }  // namespace

@@ -7,6 +7,7 @@
 #include "tauwright/model/forms.hpp"
 #include "tune/cautions.hpp"
 #include "tune/default_speed.hpp"
+#include "tune/fit_worst_case.hpp"
 
 namespace tauwright {
 inline namespace v0 {
@@ -125,7 +126,10 @@ std::optional<Figures> figures_of(const TuningSheet& sheet, const PidSettings& s
 SheetController assessed(const TuningSheet& sheet, const PidSettings& settings, const std::optional<Entered>& entered) {
     SheetController c{.settings = settings, .entered = entered};
     c.margins = robustness(*sheet.model, settings, {.scan_time = sheet.duty.scan_time});
-    if (c.margins.verdict == Verdict::stable) c.figures = figures_of(sheet, settings);
+    if (c.margins.verdict == Verdict::stable) {
+        c.figures = figures_of(sheet, settings);
+        c.worst_case = detail::worst_over_fit(sheet, settings);
+    }
     const ValveSettings& valve = sheet.duty.valve;
     if (valve.dead_band > 0.0 || valve.stick > 0.0 || valve.resolution > 0.0) c.valve_cycle = valve_cycle(*sheet.model, settings, valve);
     return c;
@@ -151,7 +155,8 @@ void propose(TuningSheet& sheet, const TuningRequest& request) {
         }
     }
     const SheetController proposal = assessed(sheet, *settings, entered);
-    const std::string weakness = detail::weakness_of(proposal.margins);
+    std::string weakness = detail::weakness_of(proposal.margins);
+    if (weakness.empty()) weakness = detail::weakness_of(proposal.worst_case);
     if (!weakness.empty()) {
         if (proposal.margins.verdict != Verdict::stable || request.accept_weak_margins_by.empty()) {
             sheet.withheld.push_back(weakness + (proposal.margins.verdict == Verdict::stable

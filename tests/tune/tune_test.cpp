@@ -214,6 +214,32 @@ TEST_CASE("a sheet of version 1 is still read", "[regression]") {
     CHECK(differences(sheet, again).empty());
 }
 
+TEST_CASE("settings are withheld where the fit's own uncertainty makes them weak", "[invariant]") {
+    // One record of little and one of much noise, the same speed asked for: cautions, "Reasons to withhold settings".
+    const auto asked = [](double noise, const char* name) {
+        const Record record = ranged_record({.noise = noise});
+        const double dead_time = identify(record).dead_time;
+        return tune(record, {.time_constant = 0.8 * dead_time, .duty = Duty{.scan_time = 0.5}, .accept_weak_margins_by = name});
+    };
+    const TuningSheet quiet = asked(0.3, "");
+    REQUIRE(quiet.proposed);
+    REQUIRE(quiet.proposed->worst_case);
+    CHECK(quiet.proposed->worst_case->certified);
+    CHECK(*quiet.proposed->worst_case->max_sensitivity > *quiet.proposed->margins.max_sensitivity);
+    CHECK_THAT(quiet.text(), ContainsSubstring("stable, proved"));
+    const TuningSheet noisy = asked(3.0, "");
+    CHECK_FALSE(noisy.proposed);
+    REQUIRE(noisy.withheld.size() == 1);
+    CHECK_THAT(noisy.withheld[0], Catch::Matchers::StartsWith("within the fit's 95 % confidence region, the largest sensitivity is"));
+    const TuningSheet accepted = asked(3.0, "J. Doe");
+    REQUIRE(accepted.proposed);
+    CHECK(accepted.weak_margins_accepted_by == "J. Doe");
+    // What the sheet calls the worst member is one, and is as bad as it says.
+    const WorstCase& worst = *accepted.proposed->worst_case;
+    CHECK(*robustness(worst.at, accepted.proposed->settings, {.scan_time = 0.5}).max_sensitivity == Approx(*worst.max_sensitivity).epsilon(0.02));
+    CHECK(differences(accepted, TuningSheet::from_json(accepted.json())).empty());
+}
+
 TEST_CASE("a sheet says what no retuning will cure", "[published]") {
     // Sticking under integral action never settles (trade fact H02); a perfect valve has no cycle to tell of.
     const auto washed = [](const ValveSettings& valve) {

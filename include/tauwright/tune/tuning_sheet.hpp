@@ -9,6 +9,7 @@
 #include "tauwright/assess/robustness.hpp"
 #include "tauwright/assess/simulate.hpp"
 #include "tauwright/assess/valve_cycle.hpp"
+#include "tauwright/assess/worst_case.hpp"
 #include "tauwright/control/entered.hpp"
 #include "tauwright/identify/identify.hpp"
 #include "tauwright/synthesize/synthesize.hpp"
@@ -22,6 +23,9 @@ struct SheetController {
     std::optional<Entered> entered = {};      ///< in the controller's form
     Robustness margins = {};                  ///< with scan time and every filter
     std::optional<Figures> figures = {};      ///< of the trend under the duty; empty without a scan time
+    /// Over the fit's joint 95 % confidence region, half a scan standing in for the sampling; empty where the
+    /// loop is not stable or the record cannot tell a region.
+    std::optional<WorstCase> worst_case = {};
     std::optional<ValveCycle> valve_cycle = {};  ///< what the duty's valve makes of the loop; empty for a perfect one
 };
 
