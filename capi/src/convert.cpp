@@ -10,6 +10,12 @@ std::optional<double> optional(std::int32_t has, double value, const std::string
     return value;
 }
 
+std::optional<double> optional(std::int32_t has, double value, const char* owner, const char* member) {
+    if (has == 0) return std::nullopt;
+    if (has == 1) return value;
+    return optional(has, value, std::string(owner) + "." + member);
+}
+
 void set(const std::optional<double>& from, std::int32_t& has, double& value) noexcept {
     has = from ? 1 : 0;
     value = from.value_or(0.0);
@@ -30,14 +36,13 @@ std::optional<Range> optional_range(const tauw_range* source, const char* name) 
 
 PidSettings settings(const tauw_pid_settings* source, const char* name) {
     const tauw_pid_settings c = read(source, name);
-    const std::string at = std::string(name) + ".";
     return {.gain = c.gain,
-            .integral_time = optional(c.has_integral_time, c.integral_time, at + "integral_time"),
+            .integral_time = optional(c.has_integral_time, c.integral_time, name, "integral_time"),
             .derivative_time = c.derivative_time,
             .filter_time = c.filter_time,
             .measurement_filter_time = c.measurement_filter_time,
             .setpoint_weight = c.setpoint_weight,
-            .integral_gain = optional(c.has_integral_gain, c.integral_gain, at + "integral_gain")};
+            .integral_gain = optional(c.has_integral_gain, c.integral_gain, name, "integral_gain")};
 }
 
 ControllerForm controller_form(const tauw_controller_form* source, const char* name) {
@@ -92,6 +97,26 @@ Entered entered(const tauw_entered* source, const char* name) {
             .action = choice(c.action, Action::direct, at + "action", "0 (reverse), 1 (direct)")};
 }
 
+ValveSettings valve_settings(const tauw_valve_settings* source, const char* name) {
+    const tauw_valve_settings c = read(source, name);
+    return {.dead_band = c.dead_band,
+            .stick = c.stick,
+            .resolution = c.resolution,
+            .travel_rate_per_s = optional(c.has_travel_rate_per_s, c.travel_rate_per_s, name, "travel_rate_per_s")};
+}
+
+TransmitterSettings transmitter_settings(const tauw_transmitter_settings* source, const char* name) {
+    const tauw_transmitter_settings c = read(source, name);
+    return {.lag = c.lag, .resolution = c.resolution};
+}
+
+RobustnessOptions robustness_options(const tauw_robustness_options* source, const char* name) {
+    if (source == nullptr) return {};
+    const tauw_robustness_options c = read(source, name);
+    return {.scan_time = optional(c.has_scan_time, c.scan_time, name, "scan_time"),
+            .extra_delay = c.extra_delay};
+}
+
 Duty duty(const tauw_duty* source, const char* name) {
     const tauw_duty c = read(source, name);
     const std::string at = std::string(name) + ".";
@@ -100,11 +125,19 @@ Duty duty(const tauw_duty* source, const char* name) {
             .load_time = c.load_time,
             .noise = c.noise,
             .seed = c.seed,
-            .scan_time = optional(c.has_scan_time, c.scan_time, at + "scan_time_s"),
+            .scan_time = optional(c.has_scan_time, c.scan_time, at + "scan_time"),
             .output_low = c.output_low,
             .output_high = c.output_high,
             .rest_output = optional(c.has_rest_output, c.rest_output, at + "rest_output"),
-            .rest_process_value = optional(c.has_rest_process_value, c.rest_process_value, at + "rest_process_value")};
+            .rest_process_value = optional(c.has_rest_process_value, c.rest_process_value, at + "rest_process_value"),
+            .setpoint_ramp_time = c.setpoint_ramp_time,
+            .load_ramp_time = c.load_ramp_time,
+            .output_rate_limit = optional(c.has_output_rate_limit, c.output_rate_limit, at + "output_rate_limit"),
+            .valve = c.valve == nullptr ? ValveSettings{} : valve_settings(c.valve, (at + "valve").c_str()),
+            .transmitter = c.transmitter == nullptr
+                               ? TransmitterSettings{}
+                               : transmitter_settings(c.transmitter, (at + "transmitter").c_str()),
+            .disturbance = copied(c.disturbance, c.disturbance_count, (at + "disturbance").c_str())};
 }
 
 IdentifyOptions identify_options(const tauw_identify_options* source, const char* name) {

@@ -1,8 +1,8 @@
 // C++ values to C structs, and the defaults, which come from the C++ values' own.
 #include <cstring>
 
+#include "coefficients.hpp"
 #include "convert.hpp"
-#include "tauwright/run/pid_block.hpp"
 
 namespace tauwright::shell {
 
@@ -60,6 +60,14 @@ tauw_robustness from(const Robustness& r) noexcept {
     set(r.max_complementary_sensitivity, c.has_max_complementary_sensitivity, c.max_complementary_sensitivity);
     set(r.max_complementary_sensitivity_frequency, c.has_max_complementary_sensitivity_frequency,
         c.max_complementary_sensitivity_frequency);
+    set(r.sensitivity_bandwidth, c.has_sensitivity_bandwidth, c.sensitivity_bandwidth);
+    set(r.complementary_bandwidth, c.has_complementary_bandwidth, c.complementary_bandwidth);
+    set(r.delay_reduction_margin, c.has_delay_reduction_margin, c.delay_reduction_margin);
+    c.fragile = r.fragile ? 1 : 0;
+    c.phase_crossovers_capped = r.phase_crossovers_capped ? 1 : 0;
+    c.gain_crossover_count = r.gain_crossovers.size();
+    c.phase_crossover_count = r.phase_crossovers.size();
+    c.stable_dead_time_count = r.stable_dead_times.size();
     return c;
 }
 
@@ -70,6 +78,14 @@ tauw_figures from(const Figures& figures) noexcept {
     set(figures.peak_load_error, c.has_peak_load_error, c.peak_load_error);
     c.integrated_absolute_error = figures.integrated_absolute_error;
     c.valve_travel = figures.valve_travel;
+    set(figures.rise_time, c.has_rise_time, c.rise_time);
+    set(figures.decay_ratio, c.has_decay_ratio, c.decay_ratio);
+    set(figures.peak_load_error_time, c.has_peak_load_error_time, c.peak_load_error_time);
+    c.integrated_squared_error = figures.integrated_squared_error;
+    c.integrated_time_absolute_error = figures.integrated_time_absolute_error;
+    c.integrated_error = figures.integrated_error;
+    c.time_at_limits = figures.time_at_limits;
+    c.reversals = figures.reversals;
     return c;
 }
 
@@ -123,13 +139,8 @@ template <> tauw_desired_response fresh() noexcept {
     c.order = DesiredResponse{}.order;
     return c;
 }
-template <> tauw_pid_coefficients fresh() noexcept {
-    const run::PidCoefficients from;
-    tauw_pid_coefficients c = blank<tauw_pid_coefficients>();
-    c.setpoint_weight = from.setpoint_weight;
-    c.derivative_smoothing = from.derivative_smoothing;
-    c.measurement_smoothing = from.measurement_smoothing;
-    return c;
-}
+template <> tauw_pid_coefficients fresh() noexcept { return from(run::PidCoefficients{}); }
+template <> tauw_valve_coefficients fresh() noexcept { return from(run::ValveCoefficients{}); }
+template <> tauw_transmitter_coefficients fresh() noexcept { return from(run::TransmitterCoefficients{}); }
 
 }  // namespace tauwright::shell

@@ -15,6 +15,12 @@ const char* word_of(Magic magic) noexcept {
         case Magic::differences: return "tauw_differences";
         case Magic::pid_block: return "tauw_pid_block";
         case Magic::process_block: return "tauw_process_block";
+        case Magic::audit: return "tauw_audit";
+        case Magic::margins: return "tauw_margins";
+        case Magic::uncertainty: return "tauw_uncertainty";
+        case Magic::discrete: return "tauw_discrete";
+        case Magic::valve: return "tauw_valve";
+        case Magic::transmitter: return "tauw_transmitter";
         case Magic::released: break;
     }
     return nullptr;

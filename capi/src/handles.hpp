@@ -8,11 +8,15 @@
 #include <vector>
 
 #include "shell.hpp"
+#include "tauwright/assess/robustness.hpp"
 #include "tauwright/assess/simulate.hpp"
+#include "tauwright/assess/uncertainty.hpp"
+#include "tauwright/discretize/held.hpp"
 #include "tauwright/identify/identify.hpp"
 #include "tauwright/model/transfer_function.hpp"
 #include "tauwright/synthesize/synthesize.hpp"
 #include "tauwright/tauwright.h"
+#include "tauwright/tune/audit.hpp"
 #include "tauwright/tune/tuning_sheet.hpp"
 
 namespace tauwright::shell {
@@ -29,6 +33,12 @@ enum class Magic : std::uint32_t {
     differences = 0x7a5e0d07u,
     pid_block = 0x7a5e0d08u,
     process_block = 0x7a5e0d09u,
+    audit = 0x7a5e0d0au,
+    margins = 0x7a5e0d0bu,
+    uncertainty = 0x7a5e0d0cu,
+    discrete = 0x7a5e0d0du,
+    valve = 0x7a5e0d0eu,
+    transmitter = 0x7a5e0d0fu,
 };
 
 /// The handle type of a magic word, or nullptr.
@@ -86,6 +96,30 @@ struct tauw_trend {
     tauwright::Trend value;
 };
 
+struct tauw_margins {
+    static constexpr auto kind = tauwright::shell::Magic::margins;
+    explicit tauw_margins(tauwright::Robustness robustness) : value(std::move(robustness)) {}
+
+    tauwright::shell::Magic magic = kind;
+    tauwright::Robustness value;
+};
+
+struct tauw_uncertainty {
+    static constexpr auto kind = tauwright::shell::Magic::uncertainty;
+    explicit tauw_uncertainty(tauwright::Uncertainty set) : value(std::move(set)) {}
+
+    tauwright::shell::Magic magic = kind;
+    tauwright::Uncertainty value;
+};
+
+struct tauw_discrete {
+    static constexpr auto kind = tauwright::shell::Magic::discrete;
+    explicit tauw_discrete(tauwright::DiscreteTransferFunction process) : value(std::move(process)) {}
+
+    tauwright::shell::Magic magic = kind;
+    tauwright::DiscreteTransferFunction value;
+};
+
 struct tauw_sheet {
     static constexpr auto kind = tauwright::shell::Magic::sheet;
     explicit tauw_sheet(tauwright::TuningSheet sheet) : value(std::move(sheet)) {}
@@ -100,6 +134,15 @@ struct tauw_differences {
 
     tauwright::shell::Magic magic = kind;
     std::vector<tauwright::SheetDifference> value;
+};
+
+struct tauw_audit {
+    static constexpr auto kind = tauwright::shell::Magic::audit;
+    tauw_audit(std::vector<tauwright::AuditRow> rows, bool was_cancelled) : value(std::move(rows)), cancelled(was_cancelled) {}
+
+    tauwright::shell::Magic magic = kind;
+    std::vector<tauwright::AuditRow> value;
+    bool cancelled;
 };
 
 namespace tauwright::shell {

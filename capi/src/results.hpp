@@ -56,12 +56,14 @@ struct ComplexArrays {
     std::size_t n;
     double* value_real;
     double* value_imaginary;
+    const char* real_name = "s_real";  ///< for messages
+    const char* imaginary_name = "s_imaginary";
 };
 
 template <class Function>
 void evaluate(const Function& function, const ComplexArrays& a) {
-    array(a.s_real, a.n, "s_real");
-    array(a.s_imaginary, a.n, "s_imaginary");
+    array(a.s_real, a.n, a.real_name);
+    array(a.s_imaginary, a.n, a.imaginary_name);
     array(a.value_real, a.n, "value_real");
     array(a.value_imaginary, a.n, "value_imaginary");
     for (std::size_t i = 0; i < a.n; ++i) {

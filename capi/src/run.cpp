@@ -3,15 +3,17 @@
 
 #include <cstdint>
 #include <new>
-#include <type_traits>
 
+#include "blocks.hpp"
 #include "coefficients.hpp"
 #include "enums.hpp"
-#include "handles.hpp"
 
 namespace shell = tauwright::shell;
 namespace run = tauwright::run;
+using shell::check_memory;
+using shell::known_part;
 using shell::Magic;
+using shell::on_block;
 using enum tauwright::error_code;
 
 TAUW_SAME(TAUW_MODE_MANUAL, run::Mode::manual);
@@ -23,68 +25,29 @@ TAUW_SAME(TAUW_FLAG_MANUAL, run::flag_manual);
 
 struct tauw_pid_block {
     static constexpr auto kind = Magic::pid_block;
+    static constexpr const char* null_text = "block is NULL; give a block that was set up, or a place for one";
+    static constexpr const char* wrong_text = "block is no block of this kind; give one that its _init set up";
     Magic magic = kind;
     run::PidBlock value;
 };
 struct tauw_process_block {
     static constexpr auto kind = Magic::process_block;
+    static constexpr const char* null_text = "block is NULL; give a block that was set up, or a place for one";
+    static constexpr const char* wrong_text = "block is no block of this kind; give one that its _init set up";
     Magic magic = kind;
     run::ProcessBlock value;
 };
-static_assert(std::is_trivially_copyable_v<tauw_pid_block> && std::is_trivially_destructible_v<tauw_pid_block>);
-static_assert(std::is_trivially_copyable_v<tauw_process_block> &&
-              std::is_trivially_destructible_v<tauw_process_block>);
+static_assert(shell::plain_block<tauw_pid_block> && shell::plain_block<tauw_process_block>);
 
 namespace {
 
 constexpr std::int64_t longest_delay_scans = 10000000;
 
-// Runs `body` on a live block, for whose results there is room.
-template <class Block, class Body, class... Results>
-int32_t on_block(Block* block, tauw_error* error, const Body& body, const Results*... results) noexcept {
-    if (!shell::usable(error)) return TAUW_ERROR_WRONG_STRUCT_SIZE;
-    if (block == nullptr) return shell::report(error, null_pointer, "block is NULL; give a block that was set up");
-    if (shell::magic_at(block) != std::remove_const_t<Block>::kind)
-        return shell::report(error, wrong_handle, "block is no block of this kind; give one that its _init set up");
-    if ((!results || ...))
-        return shell::report(error, null_pointer, "the result's pointer is NULL; give a place for it");
-    const tauwright::error_code code = body(block->value);
-    return shell::report(error, code, code == ok ? "" : meaning_of(code));
-}
-
-// Memory that can hold a block, and struct sizes that are known.
-template <class Block, class Coefficients>
-int32_t check_memory(const void* memory, size_t size, const Coefficients* coefficients, Block** block,
-                     tauw_error* error) noexcept {
-    if (!shell::usable(error)) return TAUW_ERROR_WRONG_STRUCT_SIZE;
-    if (block == nullptr) return shell::report(error, null_pointer, "block is NULL; give a place for the result");
-    *block = nullptr;
-    if (memory == nullptr || coefficients == nullptr)
-        return shell::report(error, null_pointer,
-                             memory == nullptr ? "memory is NULL; give memory for the block"
-                                               : "coefficients is NULL; give coefficients");
-    if (!shell::is_known_size<Coefficients>(coefficients->struct_size))
-        return shell::report(error, wrong_struct_size,
-                             "coefficients.struct_size is unknown; fill the struct with its _defaults function");
-    if (reinterpret_cast<std::uintptr_t>(memory) % alignof(Block) != 0)
-        return shell::report(error, out_of_domain, "memory is not aligned; align it as the block's _align says");
-    if (size < sizeof(Block))
-        return shell::report(error, buffer_too_small, "size is too small; give as much as the block's _size says");
-    return TAUW_OK;
-}
-
-template <class C>
-C known_part(const C& coefficients) noexcept {
-    C copy = shell::fresh<C>();
-    std::memcpy(&copy, &coefficients, coefficients.struct_size);
-    return copy;
-}
-
 bool all_finite(const run::PidCoefficients& c) noexcept {
     for (double x : {c.gain, c.setpoint_weight, c.integral_per_scan, c.derivative_per_scan, c.derivative_smoothing,
                      c.measurement_smoothing, c.tracking_per_scan})
         if (!tauwright::is_finite(x)) return false;
-    return true;
+    return !tauwright::is_nan(c.output_change_per_scan);
 }
 
 bool all_finite(const run::ProcessCoefficients& c) noexcept {
@@ -118,6 +81,9 @@ int32_t tauw_pid_block_init(void* memory, size_t size, const tauw_pid_coefficien
     if (const int32_t status = check_memory(memory, size, coefficients, block, error); status != TAUW_OK) return status;
     const run::PidCoefficients c = shell::pid_coefficients(known_part(*coefficients));
     if (!all_finite(c)) return shell::report(error, not_finite, "coefficients are not all finite; give finite ones");
+    if (c.output_change_per_scan < 0.0)
+        return shell::report(error, out_of_domain,
+                             "coefficients.output_change_per_scan is below 0; give 0 or above, infinity for no limit");
     if (!tauwright::is_finite(output_low) || !tauwright::is_finite(output_high) ||
         (initial_output != nullptr && !tauwright::is_finite(*initial_output)))
         return shell::report(error, not_finite,

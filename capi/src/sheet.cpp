@@ -121,6 +121,22 @@ int32_t tauw_sheet_figures(const tauw_sheet* sheet, int32_t controller, tauw_fig
     });
 }
 
+int32_t tauw_sheet_worst_case(const tauw_sheet* sheet, int32_t controller, tauw_worst_case* worst, tauw_error* error) {
+    return shell::guard(error, [&] {
+        const SheetController& chosen = controller_of(sheet, controller);
+        if (!chosen.worst_case) refuse_absent(word_of(controller), "a worst case over the fit");
+        shell::Result<tauw_worst_case>(worst, "worst").give(shell::from(*chosen.worst_case));
+    });
+}
+
+int32_t tauw_sheet_valve_cycle(const tauw_sheet* sheet, int32_t controller, tauw_valve_cycle* cycle, tauw_error* error) {
+    return shell::guard(error, [&] {
+        const SheetController& chosen = controller_of(sheet, controller);
+        if (!chosen.valve_cycle) refuse_absent(word_of(controller), "a valve with a fault in its duty");
+        shell::Result<tauw_valve_cycle>(cycle, "cycle").give(shell::from(*chosen.valve_cycle));
+    });
+}
+
 int32_t tauw_sheet_fit(const tauw_sheet* sheet, tauw_fit** fit, tauw_error* error) {
     return shell::guard(error, [&] {
         shell::Made<tauw_fit> made(fit, "fit");

@@ -3,6 +3,7 @@
 
 #include <algorithm>
 #include <array>
+#include <cstddef>
 #include <cstdint>
 #include <cstring>
 #include <string>
@@ -17,6 +18,17 @@ namespace tauwright::shell {
 /// specialization; members past the caller's size then keep their defaults.
 template <class T>
 inline constexpr std::array known_sizes = {std::uint32_t{sizeof(T)}};
+
+/// The size of a struct before `member` and what follows it were appended.
+#define TAUW_GREW(type, member) \
+    template <>                 \
+    inline constexpr std::array<std::uint32_t, 2> known_sizes<type> = {offsetof(type, member), sizeof(type)};
+TAUW_GREW(tauw_pid_coefficients, output_change_per_scan)
+TAUW_GREW(tauw_robustness, has_sensitivity_bandwidth)
+TAUW_GREW(tauw_duty, setpoint_ramp_time)
+TAUW_GREW(tauw_figures, has_rise_time)
+TAUW_GREW(tauw_trend_columns, measured)
+#undef TAUW_GREW
 
 template <class T>
 constexpr bool is_known_size(std::uint32_t size) noexcept {
@@ -41,16 +53,37 @@ TAUW_STRUCT_WORD(tauw_controller_form)
 TAUW_STRUCT_WORD(tauw_entered)
 TAUW_STRUCT_WORD(tauw_pid_coefficients)
 TAUW_STRUCT_WORD(tauw_process_coefficients)
+TAUW_STRUCT_WORD(tauw_valve_coefficients)
+TAUW_STRUCT_WORD(tauw_transmitter_coefficients)
+TAUW_STRUCT_WORD(tauw_discrete_parts)
+TAUW_STRUCT_WORD(tauw_valve_settings)
+TAUW_STRUCT_WORD(tauw_transmitter_settings)
 TAUW_STRUCT_WORD(tauw_robustness_options)
 TAUW_STRUCT_WORD(tauw_robustness)
 TAUW_STRUCT_WORD(tauw_duty)
 TAUW_STRUCT_WORD(tauw_figures)
 TAUW_STRUCT_WORD(tauw_trend_columns)
+TAUW_STRUCT_WORD(tauw_gain_crossover)
+TAUW_STRUCT_WORD(tauw_phase_crossover)
+TAUW_STRUCT_WORD(tauw_delay_range)
+TAUW_STRUCT_WORD(tauw_delay_budget)
+TAUW_STRUCT_WORD(tauw_uncertainty_box)
+TAUW_STRUCT_WORD(tauw_uncertainty_parts)
+TAUW_STRUCT_WORD(tauw_worst_case_options)
+TAUW_STRUCT_WORD(tauw_worst_case)
+TAUW_STRUCT_WORD(tauw_violation_limits)
+TAUW_STRUCT_WORD(tauw_violation_options)
+TAUW_STRUCT_WORD(tauw_violating_share)
+TAUW_STRUCT_WORD(tauw_valve_cycle)
 TAUW_STRUCT_WORD(tauw_desired_response)
 TAUW_STRUCT_WORD(tauw_obstacle)
 TAUW_STRUCT_WORD(tauw_synthesis_summary)
 TAUW_STRUCT_WORD(tauw_tuning_request)
 TAUW_STRUCT_WORD(tauw_sheet_summary)
+TAUW_STRUCT_WORD(tauw_audit_loop)
+TAUW_STRUCT_WORD(tauw_audit_options)
+TAUW_STRUCT_WORD(tauw_audit_row)
+TAUW_STRUCT_WORD(tauw_audit_summary)
 #undef TAUW_STRUCT_WORD
 
 template <class T>
@@ -84,7 +117,14 @@ template <> tauw_entered fresh() noexcept;
 template <> tauw_duty fresh() noexcept;
 template <> tauw_robustness fresh() noexcept;
 template <> tauw_desired_response fresh() noexcept;
+template <> tauw_audit_options fresh() noexcept;
 template <> tauw_pid_coefficients fresh() noexcept;
+template <> tauw_valve_coefficients fresh() noexcept;
+template <> tauw_transmitter_coefficients fresh() noexcept;
+template <> tauw_worst_case_options fresh() noexcept;
+template <> tauw_worst_case fresh() noexcept;
+template <> tauw_violation_options fresh() noexcept;
+template <> tauw_valve_cycle fresh() noexcept;
 
 /// The body of tauw_<x>_defaults.
 template <class T>

@@ -24,6 +24,18 @@ TAUW_SAME(TAUW_SEVERITY_CAUTION, Severity::caution);
 TAUW_SAME(TAUW_SEVERITY_NEEDS_FILTER, Severity::needs_filter);
 TAUW_SAME(TAUW_SEVERITY_IMPOSSIBLE, Severity::impossible);
 
+namespace {
+
+const tauwright::InternalModelController& controller_of(const tauw_synthesis* synthesis) {
+    const Synthesis& answer = shell::live(synthesis, "synthesis").value;
+    if (!answer.controller)
+        throw Error(tauwright::error_code::missing_argument,
+                    "synthesis has no controller; ask tauw_synthesis_summarize first and read its obstacles");
+    return *answer.controller;
+}
+
+}  // namespace
+
 int32_t tauw_desired_response_defaults(tauw_desired_response* desired, uint32_t size) {
     return shell::fill_defaults(desired, size);
 }
@@ -110,11 +122,7 @@ int32_t tauw_synthesis_attained(const tauw_synthesis* synthesis, tauw_model** mo
 int32_t tauw_synthesis_controller_at(const tauw_synthesis* synthesis, const double* s_real, const double* s_imaginary,
                                      size_t n, double* value_real, double* value_imaginary, tauw_error* error) {
     return shell::guard(error, [&] {
-        const Synthesis& answer = shell::live(synthesis, "synthesis").value;
-        if (!answer.controller)
-            throw Error(tauwright::error_code::missing_argument,
-                        "synthesis has no controller; ask tauw_synthesis_summarize first and read its obstacles");
-        shell::evaluate(*answer.controller, {s_real, s_imaginary, n, value_real, value_imaginary});
+        shell::evaluate(controller_of(synthesis), {s_real, s_imaginary, n, value_real, value_imaginary});
     });
 }
 
@@ -125,6 +133,15 @@ int32_t tauw_synthesis_attained_with_settings_at(const tauw_synthesis* synthesis
         const Synthesis& answer = shell::live(synthesis, "synthesis").value;
         shell::evaluate([&](std::complex<double> s) { return answer.attained_with_settings(s); },
                         {s_real, s_imaginary, n, value_real, value_imaginary});
+    });
+}
+
+int32_t tauw_margins_of_exact_controller(const tauw_model* process, const tauw_synthesis* synthesis,
+                                         double extra_delay, tauw_margins** margins, tauw_error* error) {
+    return shell::guard(error, [&] {
+        shell::Made<tauw_margins> made(margins, "margins");
+        const tauwright::TransferFunction& g = shell::live(process, "process").value;
+        made.give(tauwright::robustness(g, controller_of(synthesis), {.extra_delay = extra_delay}));
     });
 }
 

@@ -207,7 +207,7 @@ std::optional<int> MismatchCurve::count_controller_poles() const {
     const auto turn = TurnOfDenominator(controller_, response_).from(low);
     if (!turn) return std::nullopt;
     const double exact = response_.unstable_poles() - 0.5 * order_at_rest_ - (*turn + std::arg(first / rest)) / std::numbers::pi;
-    if (std::abs(exact - std::round(exact)) > (response_.at_infinity() > 0.0 ? 0.25 : 1e-3)) return std::nullopt;
+    if (!(std::abs(exact - std::round(exact)) <= (response_.at_infinity() > 0.0 ? 0.25 : 1e-3))) return std::nullopt;
     // And from the crossings as a gain on T rises from 0 to 1, the last of them at 0 itself.
     const FactoredCurve negative(response_.loop().with_gain(-response_.loop().gain()));
     const SweepResult found = sweep(negative, nullptr);

@@ -74,6 +74,8 @@ std::optional<PoleCount> poles_without_dead_time(const TransferFunction& loop) {
     while (!sum.empty() && sum.back() == 0.0) sum.pop_back();
     if (sum.size() < 2) return sum.empty() ? std::nullopt : std::optional<PoleCount>(PoleCount{});
     if (sum.front() == 0.0) return std::nullopt;
+    for (double c : sum)
+        if (!is_finite(c)) return std::nullopt;  // products of times beyond all numbers
     if (const auto right = right_by_routh(sum)) return PoleCount{*right, 0};
     return count_roots(sum);
 }
@@ -115,7 +117,7 @@ std::optional<int> poles_by_winding(const LoopCurve& curve, const SweepResult& f
     const double rounded = std::round(exact);
     // Where the loop keeps gain at infinite frequency the turn never ends; it is cut near a whole one.
     const bool ends = curve.at_infinity() == 0.0;
-    if (std::abs(exact - rounded) > (ends ? 1e-3 : 0.25)) return std::nullopt;
+    if (!(std::abs(exact - rounded) <= (ends ? 1e-3 : 0.25))) return std::nullopt;
     return static_cast<int>(rounded);
 }
 

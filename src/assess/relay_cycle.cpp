@@ -36,6 +36,11 @@ public:
         HalfPeriod h;
         h.length = length;
         const double whole = std::floor(loop_.dead_time / length);
+        if (!(whole < 1e9)) {  // no cycle that fast is one of this loop
+            h.start.assign(n_ + 1, 0.0);
+            h.miss = std::numeric_limits<double>::quiet_NaN();
+            return h;
+        }
         h.pending = static_cast<std::size_t>(whole);
         h.turn = std::max(0.0, loop_.dead_time - whole * length);
         h.level = h.pending % 2 == 0 ? 0.5 : -0.5;

@@ -4,6 +4,7 @@
 #include <cmath>
 
 #include "assess/driven_process.hpp"
+#include "assess/duty_columns.hpp"
 #include "tauwright/run/pid_block.hpp"
 
 namespace tauwright {
@@ -12,52 +13,12 @@ inline namespace v0 {
 namespace {
 
 using detail::DrivenProcess;
-
-constexpr double run_away = 1e60;
-
-// How much of a step that begins at `start` is made at `t`, 0 to 1.
-double progress(double t, double start, double ramp_time) noexcept {
-    if (ramp_time == 0.0) return t >= start * (1.0 - 1e-12) ? 1.0 : 0.0;
-    return std::clamp((t - start) / ramp_time, 0.0, 1.0);
-}
-
-bool load_ramps(const Duty& duty) noexcept { return duty.load_step != 0.0 && duty.load_ramp_time > 0.0; }
+using detail::load_ramps;
+using detail::progress;
+using detail::run_away;
 
 // The lag is in the plant; what is left of the transmitter is noise and quantization.
 TransmitterSettings converter_of(const Duty& duty) noexcept { return {.resolution = duty.transmitter.resolution}; }
-
-std::size_t count_of_scans(double scan_time, double horizon_s) {
-    detail::require_positive("horizon", horizon_s);
-    const double scans = std::floor(horizon_s / scan_time * (1.0 + 1e-12));
-    if (!(scans >= 1.0))
-        detail::refuse(error_code::out_of_domain, "horizon", horizon_s,
-                       detail::joined({"duty.scan_time is ", text_of(scan_time),
-                                       " s, longer than this; give a horizon of at least two scans"}));
-    if (!(scans >= 2.0) || !(scans <= 1e7))
-        detail::refuse(error_code::out_of_domain, "horizon", horizon_s,
-                       detail::joined({"give from two to ten million scans of ", text_of(scan_time), " s"}));
-    return static_cast<std::size_t>(scans) + 1;
-}
-
-// Time, set point and load are known beforehand.
-Trend prepared(const Duty& duty, double h, std::size_t n) {
-    Trend trend;
-    trend.duty = duty;
-    const double rest = duty.resting_process_value();
-    trend.time_s.resize(n);
-    for (std::size_t k = 0; k < n; ++k) trend.time_s[k] = static_cast<double>(k) * h;
-    trend.setpoint.assign(n, rest + duty.setpoint_step);
-    if (duty.setpoint_ramp_time > 0.0)
-        for (std::size_t k = 0; k < n; ++k)
-            trend.setpoint[k] = rest + duty.setpoint_step * progress(trend.time_s[k], 0.0, duty.setpoint_ramp_time);
-    trend.load.resize(n);
-    if (duty.load_step != 0.0)
-        for (std::size_t k = 0; k < n; ++k)
-            trend.load[k] = duty.load_step * progress(trend.time_s[k], duty.load_time, duty.load_ramp_time);
-    for (std::size_t k = 0; k < std::min(n, duty.disturbance.size()); ++k) trend.load[k] += duty.disturbance[k];
-    for (auto* column : {&trend.process_value, &trend.output, &trend.measured, &trend.valve_position}) column->resize(n);
-    return trend;
-}
 
 void cut(Trend& trend, std::size_t n) {
     trend.ran_away = true;
@@ -188,12 +149,13 @@ Trend simulate(const TransferFunction& process, const PidSettings& settings, con
     if (!duty.scan_time)
         throw Error(error_code::missing_argument, "duty.scan_time is not given; the simulated controller needs one");
     const double h = *duty.scan_time, rest = duty.resting_process_value();
-    const std::size_t n = count_of_scans(h, horizon_s);
+    const std::size_t n = detail::count_of_scans(h, horizon_s);
     check_order(process, duty);
     run::PidBlock controller = controller_of(settings, duty, h);
     controller.step(rest, run::Transmitter(discretize(converter_of(duty), h), rest).step(rest));  // at rest before time 0
 
-    Trend trend = prepared(duty, h, n);
+    Trend trend = detail::known_columns(duty, h, n);
+    for (auto* column : {&trend.process_value, &trend.output, &trend.measured, &trend.valve_position}) column->resize(n);
     const bool plain = duty.valve.perfect() && duty.transmitter.perfect() && duty.noise == 0.0 && !load_ramps(duty);
     if (plain && detail::fits_process_block(process)) run_plain(trend, controller, process, h);
     else run_full(trend, controller, process, h);

@@ -118,7 +118,8 @@ private:
     void look_ahead() noexcept {
         double corner = std::min(curve_.smallest_root(), curve_.fastest_turn() > 0.0 ? 1.0 / curve_.fastest_turn() : infinity);
         if (m_ > 0) corner = std::min(corner, std::pow(std::abs(curve_.low_gain()), 1.0 / m_));
-        if (!is_finite(corner) || corner <= 0.0) corner = 1.0;
+        if (!is_finite(corner)) corner = 1.0;
+        corner = std::max(corner, 1e-290);
         double stop = std::max(10.0 * curve_.largest_root(), curve_.fastest_turn() > 0.0 ? 6.0 / curve_.fastest_turn() : 0.0);
         stop = std::min({std::max(stop, 100.0 * corner), 1e6 * corner, curve_.end()});
         for (double w = 0.1 * corner; w < stop; w *= look_ratio) {

@@ -60,8 +60,14 @@ int main(void) {
     test_control();
     test_blocks();
     test_assess();
+    test_field_blocks();
+    test_discrete();
+    test_margins();
+    test_uncertain();
+    test_trends();
     test_synthesize();
     test_tune();
+    test_audit();
     test_null_pointers();
     test_handles();
     test_bad_input();

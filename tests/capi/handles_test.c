@@ -50,6 +50,9 @@ static void null_pointers_of_handles(void) {
     tauw_trend* trend = NULL;
     tauw_synthesis* synthesis = NULL;
     tauw_differences* differences = NULL;
+    tauw_margins* margins = NULL;
+    tauw_uncertainty* uncertainty = NULL;
+    tauw_discrete* discrete = NULL;
     tauw_pid_settings settings;
     tauw_duty duty;
     tauw_desired_response desired;
@@ -94,6 +97,28 @@ static void null_pointers_of_handles(void) {
     NULL_IN(tauw_simulate(NULL, &settings, &duty, 1.0, &trend, &error));
     NULL_IN(tauw_trend_view(NULL, NULL, &error));
     NULL_IN(tauw_trend_figures(NULL, NULL, &error));
+    NULL_IN(tauw_continuous_trend(NULL, &settings, &duty, 1.0, 9, &trend, &error));
+    NULL_IN(tauw_valve_cycle_of(NULL, &settings, NULL, NULL, &error));
+    NULL_IN(tauw_margins_of(NULL, &settings, NULL, &margins, &error));
+    NULL_IN(tauw_margins_of_open_loop(NULL, &margins, &error));
+    NULL_IN(tauw_margins_of_exact_controller(NULL, NULL, 0.0, &margins, &error));
+    NULL_IN(tauw_margins_summarize(NULL, NULL, &error));
+    NULL_IN(tauw_margins_gain_crossover(NULL, 0, NULL, &error));
+    NULL_IN(tauw_margins_phase_crossover(NULL, 0, NULL, &error));
+    NULL_IN(tauw_margins_stable_dead_time(NULL, 0, NULL, &error));
+    NULL_IN(tauw_delay_budget_of(NULL, &settings, NULL, NULL, &error));
+    NULL_IN(tauw_uncertainty_of_box(NULL, &uncertainty, &error));
+    NULL_IN(tauw_uncertainty_view(NULL, NULL, &error));
+    NULL_IN(tauw_uncertainty_half_widths(NULL, NULL, &error));
+    NULL_IN(tauw_uncertainty_parameter_name(NULL, 0, NULL, 0, &needed, &error));
+    NULL_IN(tauw_uncertainty_model(NULL, 0, &model, &error));
+    NULL_IN(tauw_worst_case_of(NULL, &settings, NULL, NULL, NULL, &model, &error));
+    NULL_IN(tauw_violating_share_of(NULL, &settings, NULL, NULL, NULL, NULL, &error));
+    NULL_IN(tauw_held(NULL, 1.0, 0, &discrete, &error));
+    NULL_IN(tauw_discrete_at(NULL, &x, &x, 1, &x, &x, &error));
+    NULL_IN(tauw_discrete_at_offset(NULL, &x, &x, 1, &x, &x, &error));
+    NULL_IN(tauw_discrete_at_frequency(NULL, &x, 1, &x, &x, &error));
+    NULL_IN(tauw_discrete_view(NULL, NULL, &error));
     NULL_IN(tauw_synthesize(NULL, &desired, &synthesis, &error));
     NULL_IN(tauw_synthesis_summarize(NULL, NULL, &error));
     NULL_IN(tauw_synthesis_settings(NULL, &settings, &error));
@@ -171,6 +196,11 @@ void test_handles(void) {
     tauw_synthesis *synthesis = NULL, *other_synthesis = NULL;
     tauw_trend *trend = NULL, *other_trend = NULL;
     tauw_differences *differences = NULL, *other_differences = NULL;
+    tauw_margins *margins = NULL, *other_margins = NULL;
+    tauw_uncertainty *uncertainty = NULL, *other_uncertainty = NULL;
+    tauw_discrete *discrete = NULL, *other_discrete = NULL;
+    tauw_uncertainty_box half_widths;
+    tauw_worst_case worst;
     tauw_desired_response desired;
     tauw_pid_settings settings;
     tauw_duty duty;
@@ -188,11 +218,16 @@ void test_handles(void) {
     OK(tauw_synthesize(model, &desired, &synthesis, &error));
     OK(tauw_simulate(model, &settings, &duty, 10.0, &trend, &error));
     OK(tauw_differences_between(sheet, sheet, &differences, &error));
+    tauw_uncertainty_box_defaults(&half_widths, sizeof half_widths);
+    tauw_worst_case_defaults(&worst, sizeof worst);
+    OK(tauw_margins_of(model, &settings, NULL, &margins, &error));
+    OK(tauw_uncertainty_of_box(&half_widths, &uncertainty, &error));
+    OK(tauw_held(model, 1.0, TAUW_BETWEEN_CONSTANT, &discrete, &error));
 
     double x = 0.0;
     size_t needed = 0;
-    void* all[7] = {record, model, fit, sheet, synthesis, trend, differences};
-    for (int i = 0; i < 7; ++i) {
+    void* all[10] = {record, model, fit, sheet, synthesis, trend, differences, margins, uncertainty, discrete};
+    for (int i = 0; i < 10; ++i) {
         void* it = all[i];
         if (it != record) {
             WRONG(tauw_record_sha256(it, NULL, 0, &needed, &error));
@@ -211,6 +246,11 @@ void test_handles(void) {
             WRONG(tauw_simulate(it, &settings, &duty, 10.0, &other_trend, &error));
             WRONG(tauw_synthesize(it, &desired, &other_synthesis, &error));
             WRONG(tauw_discretize_process(it, 1.0, NULL, &error));
+            WRONG(tauw_margins_of_open_loop(it, &other_margins, &error));
+            WRONG(tauw_held(it, 1.0, 0, &other_discrete, &error));
+            const tauw_model* list[2] = {model, it};
+            WRONG(tauw_uncertainty_of_models(list, 2, &other_uncertainty, &error));
+            WRONG(tauw_worst_case_of(it, &settings, uncertainty, NULL, &worst, &made, &error));
             tauw_desired_response literal = desired;
             literal.has_time_constant = 0;
             literal.transfer_function = it;
@@ -222,6 +262,7 @@ void test_handles(void) {
             WRONG(tauw_fit_lags(it, &x, 1, NULL, &error));
             WRONG(tauw_fitted_response(it, record, NULL, 0, &needed, &error));
             WRONG(tauw_fit_summarize(it, NULL, &error));
+            WRONG(tauw_uncertainty_from_fit(it, 0.95, &other_uncertainty, &error));
             tauw_fit* alias = it;
             WRONG(tauw_fit_destroy(&alias));
         }
@@ -236,6 +277,7 @@ void test_handles(void) {
         if (it != synthesis) {
             WRONG(tauw_synthesis_settings(it, &settings, &error));
             WRONG(tauw_synthesis_controller_at(it, &x, &x, 1, &x, &x, &error));
+            WRONG(tauw_margins_of_exact_controller(model, it, 0.0, &other_margins, &error));
             tauw_synthesis* alias = it;
             WRONG(tauw_synthesis_destroy(&alias));
         }
@@ -249,8 +291,26 @@ void test_handles(void) {
             tauw_differences* alias = it;
             WRONG(tauw_differences_destroy(&alias));
         }
+        if (it != margins) {
+            WRONG(tauw_margins_summarize(it, NULL, &error));
+            tauw_margins* alias = it;
+            WRONG(tauw_margins_destroy(&alias));
+        }
+        if (it != uncertainty) {
+            WRONG(tauw_uncertainty_view(it, NULL, &error));
+            WRONG(tauw_worst_case_of(model, &settings, it, NULL, &worst, &made, &error));
+            tauw_uncertainty* alias = it;
+            WRONG(tauw_uncertainty_destroy(&alias));
+        }
+        if (it != discrete) {
+            WRONG(tauw_discrete_view(it, NULL, &error));
+            tauw_discrete* alias = it;
+            WRONG(tauw_discrete_destroy(&alias));
+        }
         WRONG(tauw_pid_block_output(it, &x, &error));
         WRONG(tauw_process_block_process_value(it, &x, &error));
+        WRONG(tauw_valve_position(it, &x, &error));
+        WRONG(tauw_transmitter_measured(it, &x, &error));
     }
     WRONG(tauw_fit_lags((tauw_fit*)model, &x, 1, NULL, &error));
     CHECK(strstr(error.message, "fit is a tauw_model") != NULL && strstr(error.message, "give a tauw_fit") != NULL);
@@ -265,7 +325,12 @@ void test_handles(void) {
         OK(tauw_synthesis_destroy(&synthesis));
         OK(tauw_trend_destroy(&trend));
         OK(tauw_differences_destroy(&differences));
+        OK(tauw_margins_destroy(&margins));
+        OK(tauw_uncertainty_destroy(&uncertainty));
+        OK(tauw_discrete_destroy(&discrete));
     }
+    CHECK(margins == NULL && uncertainty == NULL && discrete == NULL);
+    CHECK(other_margins == NULL && other_uncertainty == NULL && other_discrete == NULL);
     CHECK(record == NULL && model == NULL && fit == NULL && sheet == NULL && synthesis == NULL && trend == NULL);
     CHECK(differences == NULL);
     OK(tauw_model_destroy(NULL));

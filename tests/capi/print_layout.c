@@ -146,10 +146,33 @@ static void run(void) {
     C(TAUW_FLAG_BAD_INPUT); C(TAUW_FLAG_LIMITED_LOW); C(TAUW_FLAG_LIMITED_HIGH); C(TAUW_FLAG_MANUAL);
     BEGIN(tauw_pid_coefficients);
     M(struct_size); M(reserved); M(gain); M(setpoint_weight); M(integral_per_scan); M(derivative_per_scan);
-    M(derivative_smoothing); M(measurement_smoothing); M(tracking_per_scan);
+    M(derivative_smoothing); M(measurement_smoothing); M(tracking_per_scan); M(output_change_per_scan);
     END;
     BEGIN(tauw_process_coefficients);
     M(struct_size); M(reserved); M(growth); M(now); M(before); M(outputs); M(direct); M(delay_scans);
+    END;
+    BEGIN(tauw_valve_coefficients);
+    M(struct_size); M(reserved); M(dead_band); M(stick); M(resolution); M(travel_per_scan); M(position_low);
+    M(position_high);
+    END;
+    BEGIN(tauw_transmitter_coefficients);
+    M(struct_size); M(reserved); M(smoothing); M(noise); M(resolution); M(seed);
+    END;
+}
+
+static void discretize(void) {
+    printf("enum tauw_between\n");
+    C(TAUW_BETWEEN_CONSTANT); C(TAUW_BETWEEN_LINEAR);
+    BEGIN(tauw_discrete_parts);
+    M(struct_size); M(between); M(scan_time); M(order); M(delay_scans); M(steady_gain); M(leading); M(factored_error);
+    M(direct_now); M(direct_before); M(growth); M(now); M(before); M(ahead); M(outputs); M(pole_offsets);
+    M(pole_count); M(zero_offsets); M(zero_count);
+    END;
+    BEGIN(tauw_valve_settings);
+    M(struct_size); M(has_travel_rate_per_s); M(dead_band); M(stick); M(resolution); M(travel_rate_per_s);
+    END;
+    BEGIN(tauw_transmitter_settings);
+    M(struct_size); M(reserved); M(lag); M(resolution);
     END;
 }
 
@@ -165,19 +188,77 @@ static void assess(void) {
     M(has_max_sensitivity); M(has_max_sensitivity_frequency); M(has_max_complementary_sensitivity);
     M(has_max_complementary_sensitivity_frequency); M(gain_margin); M(gain_reduction_margin); M(phase_margin_deg);
     M(delay_margin); M(max_sensitivity); M(max_sensitivity_frequency); M(max_complementary_sensitivity);
-    M(max_complementary_sensitivity_frequency);
+    M(max_complementary_sensitivity_frequency); M(has_sensitivity_bandwidth); M(has_complementary_bandwidth);
+    M(has_delay_reduction_margin); M(fragile); M(phase_crossovers_capped); M(reserved); M(sensitivity_bandwidth);
+    M(complementary_bandwidth); M(delay_reduction_margin); M(gain_crossover_count); M(phase_crossover_count);
+    M(stable_dead_time_count);
     END;
     BEGIN(tauw_duty);
     M(struct_size); M(has_scan_time); M(scan_time); M(setpoint_step); M(load_step); M(load_time); M(noise);
     M(seed); M(output_low); M(output_high); M(has_rest_output); M(has_rest_process_value); M(rest_output);
-    M(rest_process_value);
+    M(rest_process_value); M(setpoint_ramp_time); M(load_ramp_time); M(has_output_rate_limit); M(reserved);
+    M(output_rate_limit); M(valve); M(transmitter); M(disturbance); M(disturbance_count);
     END;
     BEGIN(tauw_figures);
     M(struct_size); M(has_overshoot_percent); M(has_settling_time); M(has_peak_load_error); M(overshoot_percent);
     M(settling_time); M(peak_load_error); M(integrated_absolute_error); M(valve_travel);
+    M(has_rise_time); M(has_decay_ratio); M(has_peak_load_error_time); M(reserved); M(rise_time); M(decay_ratio);
+    M(peak_load_error_time); M(integrated_squared_error); M(integrated_time_absolute_error); M(integrated_error);
+    M(time_at_limits); M(reversals);
     END;
     BEGIN(tauw_trend_columns);
-    M(struct_size); M(limited); M(n); M(time_s); M(setpoint); M(process_value); M(output);
+    M(struct_size); M(limited); M(n); M(time_s); M(setpoint); M(process_value); M(output); M(measured);
+    M(valve_position); M(load); M(ran_away); M(reserved);
+    END;
+    printf("enum tauw_cycle_existence\n");
+    C(TAUW_CYCLE_NONE); C(TAUW_CYCLE_PERSISTS); C(TAUW_CYCLE_UNDETERMINED);
+    BEGIN(tauw_valve_cycle);
+    M(struct_size); M(existence); M(has_period); M(has_process_value_amplitude); M(has_output_amplitude);
+    M(retuning_cures); M(period); M(process_value_amplitude); M(output_amplitude); M(reason);
+    END;
+}
+
+static void margins(void) {
+    BEGIN(tauw_gain_crossover);
+    M(struct_size); M(touches); M(frequency_rad_s); M(phase_margin_deg); M(delay_margin); M(error_bound);
+    END;
+    BEGIN(tauw_phase_crossover);
+    M(struct_size); M(touches); M(frequency_rad_s); M(gain_factor); M(error_bound);
+    END;
+    BEGIN(tauw_delay_range);
+    M(struct_size); M(reserved); M(low); M(high);
+    END;
+    BEGIN(tauw_delay_budget);
+    M(struct_size); M(reserved); M(process_dead_time); M(half_scan); M(extra_delay); M(measurement_filter_time);
+    M(total); M(working_gain);
+    END;
+    printf("enum tauw_uncertainty_kind\n");
+    C(TAUW_UNCERTAINTY_BOX); C(TAUW_UNCERTAINTY_CONFIDENCE_REGION); C(TAUW_UNCERTAINTY_MODELS);
+    BEGIN(tauw_uncertainty_box);
+    M(struct_size); M(absolute); M(gain); M(lags); M(leads); M(damping); M(dead_time);
+    END;
+    BEGIN(tauw_uncertainty_parts);
+    M(struct_size); M(kind); M(confidence); M(model_count); M(parameter_count); M(estimates); M(half_axes);
+    END;
+    BEGIN(tauw_worst_case_options);
+    M(struct_size); M(reserved); M(extra_delay); M(tolerance); M(most_boxes); M(progress); M(context);
+    END;
+    BEGIN(tauw_worst_case);
+    M(struct_size); M(verdict); M(certified); M(cancelled); M(has_max_sensitivity); M(has_max_sensitivity_bound);
+    M(has_gain_margin); M(has_gain_margin_bound); M(has_phase_margin_deg); M(has_phase_margin_deg_bound);
+    M(has_delay_margin); M(has_delay_margin_bound); M(has_at_model); M(reserved); M(max_sensitivity);
+    M(max_sensitivity_bound); M(gain_margin); M(gain_margin_bound); M(phase_margin_deg); M(phase_margin_deg_bound);
+    M(delay_margin); M(delay_margin_bound); M(at_model); M(members_tried); M(boxes_used);
+    END;
+    BEGIN(tauw_violation_limits);
+    M(struct_size); M(has_max_sensitivity); M(has_gain_margin); M(has_phase_margin_deg); M(max_sensitivity);
+    M(gain_margin); M(phase_margin_deg);
+    END;
+    BEGIN(tauw_violation_options);
+    M(struct_size); M(reserved); M(members); M(seed); M(extra_delay); M(progress); M(context);
+    END;
+    BEGIN(tauw_violating_share);
+    M(struct_size); M(cancelled); M(share); M(standard_error); M(members); M(unstable);
     END;
 }
 
@@ -198,6 +279,32 @@ static void synthesize(void) {
     BEGIN(tauw_synthesis_summary);
     M(struct_size); M(buildable); M(pid_expressible); M(has_controller); M(has_settings); M(controller_integrators);
     M(obstacle_count);
+    END;
+}
+
+static void audit(void) {
+    printf("enum tauw_audit_outcome\n");
+    C(TAUW_AUDIT_FAILED); C(TAUW_AUDIT_UNSTABLE_IN_SERVICE); C(TAUW_AUDIT_WEAK_IN_SERVICE); C(TAUW_AUDIT_PROPOSAL_BETTER);
+    C(TAUW_AUDIT_NO_CASE); C(TAUW_AUDIT_TRADE_OFF); C(TAUW_AUDIT_PROPOSAL_WORSE); C(TAUW_AUDIT_NO_PROPOSAL);
+    C(TAUW_AUDIT_UNDETERMINED);
+    printf("enum tauw_audit_side\n");
+    C(TAUW_AUDIT_IN_SERVICE); C(TAUW_AUDIT_PROPOSAL);
+    printf("enum tauw_audit_item\n");
+    C(TAUW_AUDIT_NAME); C(TAUW_AUDIT_REASON); C(TAUW_AUDIT_ERROR); C(TAUW_AUDIT_TEXT);
+    BEGIN(tauw_audit_loop);
+    M(struct_size); M(process_gain_unit); M(name); M(process); M(settings); M(entered); M(form); M(proposal); M(duty);
+    M(horizon); M(has_horizon); M(reserved);
+    END;
+    BEGIN(tauw_audit_options);
+    M(struct_size); M(threads); M(progress); M(context);
+    END;
+    BEGIN(tauw_audit_row);
+    M(struct_size); M(outcome); M(code); M(change_worthwhile); M(proposal_made); M(has_in_service);
+    M(has_in_service_entered); M(has_in_service_figures); M(has_proposal); M(has_proposal_entered);
+    M(has_proposal_figures); M(reserved); M(horizon);
+    END;
+    BEGIN(tauw_audit_summary);
+    M(struct_size); M(cancelled); M(rows); M(failed); M(unstable_in_service); M(weak_in_service); M(changes_worthwhile);
     END;
 }
 
@@ -226,8 +333,11 @@ int main(void) {
     identify();
     control();
     run();
+    discretize();
     assess();
+    margins();
     synthesize();
     tune();
+    audit();
     return gaps;
 }

@@ -21,6 +21,8 @@ static void settings_by_the_rule(const tauw_sheet* sheet) {
     tauw_entered entered;
     tauw_robustness margins;
     tauw_figures figures;
+    tauw_worst_case worst;
+    tauw_valve_cycle cycle;
     tauw_sheet_summary_defaults(&summary, sizeof summary);
     tauw_pid_settings_defaults(&settings, sizeof settings);
     tauw_entered_defaults(&entered, sizeof entered);
@@ -46,6 +48,11 @@ static void settings_by_the_rule(const tauw_sheet* sheet) {
     CHECK_NEAR(settings.gain, 1.0 / 3.0, 1e-12);
     CHECK_NEAR(settings.integral_time, 15.0, 1e-12);
     CHECK(summary.has_proposed_figures == 1);
+    tauw_worst_case_defaults(&worst, sizeof worst);
+    OK(tauw_sheet_worst_case(sheet, TAUW_SHEET_PROPOSED, &worst, &error));
+    CHECK(worst.certified == 1 && worst.has_max_sensitivity == 1 && worst.max_sensitivity <= worst.max_sensitivity_bound);
+    tauw_valve_cycle_defaults(&cycle, sizeof cycle);
+    CHECK_STATUS(tauw_sheet_valve_cycle(sheet, TAUW_SHEET_PROPOSED, &cycle, &error), TAUW_ERROR_MISSING_ARGUMENT);
     OK(tauw_sheet_figures(sheet, TAUW_SHEET_PROPOSED, &figures, &error));
     CHECK(figures.integrated_absolute_error > 0.0);
     for (size_t i = 0; i < summary.caution_count; ++i) {

@@ -63,16 +63,21 @@ struct Handles {
     tauw_synthesis* synthesis = nullptr;
     tauw_trend* trend = nullptr;
     tauw_sheet* sheet = nullptr;
+    tauw_margins* margins = nullptr;
+    tauw_uncertainty* uncertainty = nullptr;
+    tauw_discrete* discrete = nullptr;
 
     ~Handles() {
         require(tauw_record_destroy(&record) == TAUW_OK && tauw_model_destroy(&model) == TAUW_OK);
         require(tauw_fit_destroy(&fit) == TAUW_OK && tauw_synthesis_destroy(&synthesis) == TAUW_OK);
         require(tauw_trend_destroy(&trend) == TAUW_OK && tauw_sheet_destroy(&sheet) == TAUW_OK);
+        require(tauw_margins_destroy(&margins) == TAUW_OK && tauw_uncertainty_destroy(&uncertainty) == TAUW_OK);
+        require(tauw_discrete_destroy(&discrete) == TAUW_OK);
     }
 
     void* any(int which) const {
-        void* all[] = {record, model, fit, synthesis, trend, sheet, nullptr};
-        return all[which % 7];
+        void* all[] = {record, model, fit, synthesis, trend, sheet, margins, uncertainty, discrete, nullptr};
+        return all[which % 10];
     }
 };
 
@@ -139,7 +144,7 @@ void make_record(Bytes& in, Handles& h, tauw_error& error) {
 }
 
 void look(Bytes& in, const Handles& h, tauw_error& error) {
-    void* it = h.any(in.small(7));
+    void* it = h.any(in.small(10));
     char text[64];
     double numbers[8];
     std::size_t needed = 0;
@@ -147,9 +152,16 @@ void look(Bytes& in, const Handles& h, tauw_error& error) {
     tauw_pid_settings settings = in.filled(tauw_pid_settings_defaults);
     tauw_robustness robustness = in.filled(tauw_robustness_defaults);
     tauw_finding finding = in.filled(tauw_finding_defaults);
+    tauw_gain_crossover gain_crossover = in.filled(tauw_gain_crossover_defaults);
+    tauw_phase_crossover phase_crossover = in.filled(tauw_phase_crossover_defaults);
+    tauw_delay_range range = in.filled(tauw_delay_range_defaults);
+    tauw_uncertainty_parts parts = in.filled(tauw_uncertainty_parts_defaults);
+    tauw_discrete_parts pieces = in.filled(tauw_discrete_parts_defaults);
+    tauw_trend_columns columns = in.filled(tauw_trend_columns_defaults);
+    tauw_figures figures = in.filled(tauw_figures_defaults);
     std::int32_t status = TAUW_OK;
     // The handle is of the right kind only by chance.
-    switch (in.small(14)) {
+    switch (in.small(23)) {
         case 0: status = tauw_model_text(static_cast<tauw_model*>(it), text, capacity, &needed, &error); break;
         case 1: status = tauw_fit_lags(static_cast<tauw_fit*>(it), numbers, index % 8, &needed, &error); break;
         case 2: status = tauw_fit_finding(static_cast<tauw_fit*>(it), index, &finding, &error); break;
@@ -167,6 +179,23 @@ void look(Bytes& in, const Handles& h, tauw_error& error) {
             status = tauw_synthesis_controller_at(static_cast<tauw_synthesis*>(it), s, w, 1, numbers, numbers + 1, &error);
             break;
         }
+        case 13: status = tauw_margins_summarize(static_cast<tauw_margins*>(it), &robustness, &error); break;
+        case 14: status = tauw_margins_gain_crossover(static_cast<tauw_margins*>(it), index, &gain_crossover, &error); break;
+        case 15: status = tauw_margins_phase_crossover(static_cast<tauw_margins*>(it), index % 4, &phase_crossover, &error); break;
+        case 16: status = tauw_margins_stable_dead_time(static_cast<tauw_margins*>(it), index % 4, &range, &error); break;
+        case 17: status = tauw_uncertainty_view(static_cast<tauw_uncertainty*>(it), &parts, &error); break;
+        case 18: status = tauw_uncertainty_parameter_name(static_cast<tauw_uncertainty*>(it), index % 4, text, capacity, &needed, &error); break;
+        case 19: status = tauw_discrete_view(static_cast<tauw_discrete*>(it), &pieces, &error); break;
+        case 20: {
+            const double z[2] = {in.number(), in.number()};
+            status = tauw_discrete_at(static_cast<tauw_discrete*>(it), z, z + 1, 1, numbers, numbers + 1, &error);
+            if (status == TAUW_OK) settle(tauw_discrete_at_frequency(h.discrete, z, 2, numbers, numbers + 2, &error), error, nullptr, false);
+            break;
+        }
+        case 21:
+            status = tauw_trend_view(static_cast<tauw_trend*>(it), &columns, &error);
+            if (status == TAUW_OK) status = tauw_trend_figures(h.trend, &figures, &error);
+            break;
         default: {
             tauw_model* alias = static_cast<tauw_model*>(it);
             if (alias != h.model) require(tauw_model_destroy(&alias) == (it == nullptr ? TAUW_OK : TAUW_ERROR_WRONG_HANDLE));
@@ -206,6 +235,105 @@ void run_block(Bytes& in, tauw_error& error) {
     }
 }
 
+void run_field_blocks(Bytes& in, tauw_error& error) {
+    const tauw_valve_settings valve_settings = in.filled(tauw_valve_settings_defaults);
+    const tauw_transmitter_settings transmitter_settings = in.filled(tauw_transmitter_settings_defaults);
+    tauw_valve_coefficients v = in.filled(tauw_valve_coefficients_defaults);
+    tauw_transmitter_coefficients t = in.filled(tauw_transmitter_coefficients_defaults);
+    const double scan_time = in.number();
+    settle(tauw_discretize_valve(&valve_settings, scan_time, in.number(), in.number(), &v, &error), error, nullptr, false);
+    settle(tauw_discretize_transmitter(&transmitter_settings, scan_time, in.number(), in.byte(), &t, &error), error, nullptr, false);
+    std::vector<double> memory((tauw_valve_size() + tauw_transmitter_size()) / sizeof(double) + 2);
+    double* const second = memory.data() + tauw_valve_size() / sizeof(double) + 1;
+    tauw_valve* valve = nullptr;
+    tauw_transmitter* transmitter = nullptr;
+    settle(tauw_valve_init(memory.data(), tauw_valve_size(), &v, in.number(), &valve, &error), error, valve, true);
+    settle(tauw_transmitter_init(second, tauw_transmitter_size(), &t, in.number(), &transmitter, &error), error, transmitter, true);
+    double x = 0.0;
+    for (int scan = 0; scan < 4; ++scan) {
+        if (valve != nullptr) {
+            settle(tauw_valve_step(valve, in.number(), &x, &error), error, nullptr, false);
+            require(x >= v.position_low && x <= v.position_high);
+        }
+        if (transmitter != nullptr) settle(tauw_transmitter_step(transmitter, in.number(), &x, &error), error, nullptr, false);
+    }
+}
+
+// What a duty points to; a long scan time keeps trends short.
+struct FilledDuty {
+    explicit FilledDuty(Bytes& in) : duty(in.filled(tauw_duty_defaults)) {
+        valve = in.filled(tauw_valve_settings_defaults);
+        transmitter = in.filled(tauw_transmitter_settings_defaults);
+        for (double& x : disturbance) x = in.number();
+        duty.has_scan_time = 1;
+        duty.scan_time = 1.0;
+        duty.valve = in.small(2) == 0 ? nullptr : &valve;
+        duty.transmitter = in.small(2) == 0 ? nullptr : &transmitter;
+        duty.disturbance = disturbance;
+        duty.disturbance_count = static_cast<std::size_t>(in.small(4));
+    }
+    FilledDuty(const FilledDuty&) = delete;
+
+    tauw_duty duty;
+    tauw_valve_settings valve;
+    tauw_transmitter_settings transmitter;
+    double disturbance[3];
+};
+
+// Margins of a model as an open loop, with settings or with the exact controller.
+void assess(Bytes& in, Handles& h, tauw_error& error) {
+    require(tauw_margins_destroy(&h.margins) == TAUW_OK);
+    const tauw_pid_settings settings = in.filled(tauw_pid_settings_defaults);
+    const tauw_robustness_options options = in.filled(tauw_robustness_options_defaults);
+    const tauw_valve_settings valve = in.filled(tauw_valve_settings_defaults);
+    tauw_delay_budget budget = in.filled(tauw_delay_budget_defaults);
+    tauw_valve_cycle cycle = in.filled(tauw_valve_cycle_defaults);
+    std::int32_t status = TAUW_OK;
+    switch (in.small(3)) {
+        case 0: status = tauw_margins_of(h.model, &settings, &options, &h.margins, &error); break;
+        case 1: status = tauw_margins_of_open_loop(h.model, &h.margins, &error); break;
+        default: status = tauw_margins_of_exact_controller(h.model, h.synthesis, in.number(), &h.margins, &error); break;
+    }
+    settle(status, error, h.margins, true);
+    settle(tauw_delay_budget_of(h.model, &settings, &options, &budget, &error), error, nullptr, false);
+    settle(tauw_valve_cycle_of(h.model, &settings, &valve, &cycle, &error), error, nullptr, false);
+}
+
+std::int32_t go_on(double share_done, void* context) {
+    require(share_done >= 0.0 && share_done <= 1.0);
+    return *static_cast<std::int32_t*>(context);
+}
+
+// A set of processes, its worst member and the share that violates limits, in short searches.
+void doubt(Bytes& in, Handles& h, tauw_error& error) {
+    require(tauw_uncertainty_destroy(&h.uncertainty) == TAUW_OK);
+    const tauw_uncertainty_box box = in.filled(tauw_uncertainty_box_defaults);
+    const tauw_model* list[2] = {h.model, h.model};
+    std::int32_t status = TAUW_OK, answer = in.small(8) == 0 ? in.small(3) : 1;
+    switch (in.small(3)) {
+        case 0: status = tauw_uncertainty_of_box(&box, &h.uncertainty, &error); break;
+        case 1: status = tauw_uncertainty_from_fit(h.fit, in.number(), &h.uncertainty, &error); break;
+        default: status = tauw_uncertainty_of_models(list, static_cast<std::size_t>(in.small(3)), &h.uncertainty, &error); break;
+    }
+    settle(status, error, h.uncertainty, true);
+    const tauw_pid_settings settings = in.filled(tauw_pid_settings_defaults);
+    const tauw_violation_limits limits = in.filled(tauw_violation_limits_defaults);
+    tauw_worst_case_options options = in.filled(tauw_worst_case_options_defaults);
+    tauw_violation_options drawing = in.filled(tauw_violation_options_defaults);
+    tauw_worst_case worst = in.filled(tauw_worst_case_defaults);
+    tauw_violating_share share = in.filled(tauw_violating_share_defaults);
+    options.most_boxes = in.byte();
+    drawing.members = static_cast<std::size_t>(in.small(20));
+    options.progress = drawing.progress = in.small(2) == 0 ? nullptr : go_on;
+    options.context = drawing.context = &answer;
+    tauw_model* at = nullptr;
+    settle(tauw_worst_case_of(h.model, &settings, h.uncertainty, &options, &worst, &at, &error), error, at, true);
+    require(tauw_model_destroy(&at) == TAUW_OK);
+    status = tauw_violating_share_of(h.model, &settings, h.uncertainty, &limits, &drawing, &share, &error);
+    settle(status, error, nullptr, false);
+    if (status == TAUW_OK) require(share.share >= 0.0 && share.share <= 1.0);
+}
+
 void work(Bytes& in, Handles& h, tauw_error& error, int what) {
     if (what == 0) {
         require(tauw_fit_destroy(&h.fit) == TAUW_OK);
@@ -219,22 +347,24 @@ void work(Bytes& in, Handles& h, tauw_error& error, int what) {
     } else if (what == 2) {
         require(tauw_trend_destroy(&h.trend) == TAUW_OK);
         const tauw_pid_settings settings = in.filled(tauw_pid_settings_defaults);
-        tauw_duty duty = in.filled(tauw_duty_defaults);
-        duty.has_scan_time = 1;
-        duty.scan_time = 1.0;
+        const FilledDuty filled(in);
         const double horizon = in.byte();
-        settle(tauw_simulate(h.model, &settings, &duty, horizon, &h.trend, &error), error, h.trend, true);
+        if (in.small(2) == 0)
+            settle(tauw_simulate(h.model, &settings, &filled.duty, horizon, &h.trend, &error), error, h.trend, true);
+        else
+            settle(tauw_continuous_trend(h.model, &settings, &filled.duty, horizon / 16.0, in.byte(), &h.trend, &error), error, h.trend, true);
+    } else if (what == 3) {
+        require(tauw_discrete_destroy(&h.discrete) == TAUW_OK);
+        const double scan_time = in.number();
+        settle(tauw_held(h.model, scan_time, in.small(3), &h.discrete, &error), error, h.discrete, true);
     } else {
         require(tauw_sheet_destroy(&h.sheet) == TAUW_OK);
         tauw_tuning_request request = in.filled(tauw_tuning_request_defaults);
-        // A long scan time keeps the trends of a sheet short.
-        tauw_duty duty = in.filled(tauw_duty_defaults);
-        duty.has_scan_time = 1;
-        duty.scan_time = 1.0;
+        const FilledDuty filled(in);
         request.form = nullptr;
         request.as_found = nullptr;
         request.identify = nullptr;
-        request.duty = in.small(2) == 0 ? nullptr : &duty;
+        request.duty = in.small(2) == 0 ? nullptr : &filled.duty;
         request.accept_weak_margins_by = in.small(2) == 0 ? nullptr : "fuzz";
         request.loop_name = nullptr;
         settle(tauw_tune(h.record, &request, &h.sheet, &error), error, h.sheet, true);
@@ -249,15 +379,19 @@ extern "C" int LLVMFuzzerTestOneInput(const unsigned char* data, std::size_t siz
     tauw_error error;
     require(tauw_error_defaults(&error, sizeof error) == TAUW_OK);
     for (int calls = 0; calls < 40 && !in.empty(); ++calls) {
-        switch (const int what = in.small(10)) {
+        switch (const int what = in.small(14)) {
             case 0: make_model(in, handles, error); break;
             case 1: make_record(in, handles, error); break;
             case 2: convert(in, error); break;
             case 3: run_block(in, error); break;
-            case 4:
-            case 5:
-            case 6:
-            case 7: work(in, handles, error, what - 4); break;
+            case 4: run_field_blocks(in, error); break;
+            case 5: assess(in, handles, error); break;
+            case 6: doubt(in, handles, error); break;
+            case 7:
+            case 8:
+            case 9:
+            case 10:
+            case 11: work(in, handles, error, what - 7); break;
             default: look(in, handles, error); break;
         }
     }

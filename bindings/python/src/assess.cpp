@@ -1,180 +1,179 @@
+#include <variant>
+
 #include "bind.hpp"
 
 namespace binding {
 
 namespace {
 
-using tw::Duty;
-using tw::Figures;
+using tw::DelayBudget;
 using tw::Robustness;
-using tw::Trend;
+using AnyController = std::variant<tw::PidSettings, tw::InternalModelController>;
 
-Robustness robustness_of(const tw::TransferFunction& process, const tw::PidSettings* settings, std::optional<double> scan_time,
-                         double extra_delay) {
-    if (settings == nullptr && (scan_time || extra_delay != 0.0))
+// What it is the robustness of, so that it can be drawn.
+struct LoopRobustness : Robustness {
+    tw::TransferFunction process;
+    std::optional<AnyController> settings;
+    std::optional<double> scan_time;
+    double extra_delay = 0.0;
+};
+
+LoopRobustness robustness_of(const tw::TransferFunction& process, const std::optional<AnyController>& settings,
+                         std::optional<double> scan_time, double extra_delay) {
+    if (!settings && (scan_time || extra_delay != 0.0))
         throw tw::Error(tw::error_code::conflicting_arguments,
                         std::string(scan_time ? "scan_time" : "extra_delay") +
                             " is given without settings; an open loop is taken as it is: put the dead time into it");
     const py::gil_scoped_release released;
-    if (settings == nullptr) return tw::robustness(process);
-    return tw::robustness(process, *settings, {.scan_time = scan_time, .extra_delay = extra_delay});
+    const tw::RobustnessOptions options{.scan_time = scan_time, .extra_delay = extra_delay};
+    const auto with = [&](const auto& controller) { return tw::robustness(process, controller, options); };
+    return {settings ? std::visit(with, *settings) : tw::robustness(process), process, settings, scan_time, extra_delay};
 }
 
-std::string optional_text(const std::optional<double>& x) { return x ? short_text(*x) : "None"; }
-
 std::string text_of(const Robustness& r) {
-    return Line("Robustness")
-        .add("verdict", tw::name_of(r.verdict))
+    Line line("Robustness");
+    line.add("verdict", tw::name_of(r.verdict))
         .add("gain_margin", optional_text(r.gain_margin))
         .add("phase_margin", optional_text(r.phase_margin_deg), "deg")
         .add("delay_margin", optional_text(r.delay_margin), "s")
         .add("max_sensitivity", optional_text(r.max_sensitivity))
-        .add("max_complementary_sensitivity", optional_text(r.max_complementary_sensitivity))
-        .done();
+        .add("max_complementary_sensitivity", optional_text(r.max_complementary_sensitivity));
+    if (r.fragile) line.add("fragile", "True");
+    return line.done();
 }
 
-void bind_robustness(py::module_& m) {
-    py::class_<tw::GainCrossover>(m, "GainCrossover", "A frequency at which the open loop has gain 1.")
-        .def_readonly("frequency_rad_s", &tw::GainCrossover::frequency_rad_s)
+template <class Crossover>
+void add_touch(py::class_<Crossover>& c, const char* touches) {
+    c.def_readonly("touches", &Crossover::touches, touches)
+        .def_readonly("error_bound", &Crossover::error_bound, "rad/s, of a touch: between two crossings and none lies this much");
+}
+
+template <class Crossover>
+std::string done(Line& line, const Crossover& c) {
+    if (c.touches) line.add("touches", "True").add("error_bound", short_text(c.error_bound), "rad/s");
+    return line.done();
+}
+
+void bind_crossovers(py::module_& m) {
+    py::class_<tw::GainCrossover> gain(m, "GainCrossover", "A frequency at which the open loop has gain 1.");
+    gain.def_readonly("frequency_rad_s", &tw::GainCrossover::frequency_rad_s)
         .def_readonly("phase_margin_deg", &tw::GainCrossover::phase_margin_deg, "angle from -1, whichever direction")
-        .def_readonly("delay_margin", &tw::GainCrossover::delay_margin,
-                      "s, dead time that would bring the loop through -1 here")
+        .def_readonly("delay_margin", &tw::GainCrossover::delay_margin, "s, dead time that would bring the loop through -1 here")
         .def("__repr__", [](const tw::GainCrossover& c) {
-            return Line("GainCrossover").add("frequency", short_text(c.frequency_rad_s), "rad/s")
-                .add("phase_margin", short_text(c.phase_margin_deg), "deg").add("delay_margin", short_text(c.delay_margin), "s").done();
+            Line line("GainCrossover");
+            line.add("frequency", short_text(c.frequency_rad_s), "rad/s")
+                .add("phase_margin", short_text(c.phase_margin_deg), "deg").add("delay_margin", short_text(c.delay_margin), "s");
+            return done(line, c);
         });
-    py::class_<tw::PhaseCrossover>(m, "PhaseCrossover", "A frequency at which the open loop is real and negative.")
-        .def_readonly("frequency_rad_s", &tw::PhaseCrossover::frequency_rad_s)
+    add_touch(gain, "the gain reaches 1 without passing it, as far as rounding tells");
+    py::class_<tw::PhaseCrossover> phase(m, "PhaseCrossover", "A frequency at which the open loop is real and negative.");
+    phase.def_readonly("frequency_rad_s", &tw::PhaseCrossover::frequency_rad_s)
         .def_readonly("gain_factor", &tw::PhaseCrossover::gain_factor,
                       "factor on the gain that would bring the loop through -1 here")
         .def("__repr__", [](const tw::PhaseCrossover& c) {
-            return Line("PhaseCrossover").add("frequency", short_text(c.frequency_rad_s), "rad/s")
-                .add("gain_factor", short_text(c.gain_factor)).done();
+            Line line("PhaseCrossover");
+            line.add("frequency", short_text(c.frequency_rad_s), "rad/s").add("gain_factor", short_text(c.gain_factor));
+            return done(line, c);
         });
+    add_touch(phase, "the loop reaches the negative real axis without passing it");
+}
+
+py::list ranges_of(const std::vector<tw::DelayRange>& ranges) {
+    py::list list;
+    for (const auto& range : ranges) list.append(py::make_tuple(range.low, range.high));
+    return list;
+}
+
+void bind_robustness(py::module_& m) {
     py::class_<Robustness>(m, "Robustness",
                            "What the open loop says of the closed loop. Infinite (gain_reduction_margin: 0) where nothing\n"
                            "destabilizes; margins and peaks are None where the loop is not stable.")
         .def_property_readonly("verdict", [](const Robustness& r) { return tw::name_of(r.verdict); },
                                "'stable', 'unstable', 'marginal' or 'undetermined'")
         .def_readonly("stable", &Robustness::stable, "None where undetermined")
-        .def_readonly("unstable_poles", &Robustness::unstable_poles, "of the closed loop; None where undetermined")
+        .def_readonly("unstable_poles", &Robustness::unstable_poles,
+                      "of the closed loop (sampled: outside the unit circle); None where undetermined")
         .def_readonly("gain_margin", &Robustness::gain_margin, "smallest factor above 1 that destabilizes")
         .def_readonly("gain_reduction_margin", &Robustness::gain_reduction_margin, "largest factor below 1 that destabilizes")
         .def_readonly("phase_margin_deg", &Robustness::phase_margin_deg, "smallest angle from -1 over all gain crossovers")
         .def_readonly("delay_margin", &Robustness::delay_margin, "s, smallest dead time that destabilizes")
+        .def_readonly("delay_reduction_margin", &Robustness::delay_reduction_margin,
+                      "s, smallest reduction of the dead time that destabilizes; infinite for none")
+        .def_property_readonly("stable_dead_times", [](const Robustness& r) { return ranges_of(r.stable_dead_times); },
+                               "(low, high) in s each, ascending: all dead times of the process with which this controller is\n"
+                               "stable; high may be infinite. Empty for sampled loops")
+        .def_readonly("fragile", &Robustness::fragile, "an arbitrarily small error of the dead time can destabilize")
         .def_readonly("max_sensitivity", &Robustness::max_sensitivity, "Ms, the largest |1/(1 + L)|")
-        .def_readonly("max_sensitivity_frequency", &Robustness::max_sensitivity_frequency, "rad/s")
+        .def_readonly("max_sensitivity_frequency", &Robustness::max_sensitivity_frequency, "rad/s; infinite where only a limit")
+        .def_readonly("sensitivity_bandwidth", &Robustness::sensitivity_bandwidth,
+                      "rad/s, lowest frequency at which |1/(1 + L)| rises through 1/sqrt(2); None for none")
         .def_readonly("max_complementary_sensitivity", &Robustness::max_complementary_sensitivity, "Mt, the largest |L/(1 + L)|")
-        .def_readonly("max_complementary_sensitivity_frequency", &Robustness::max_complementary_sensitivity_frequency, "rad/s")
+        .def_readonly("max_complementary_sensitivity_frequency", &Robustness::max_complementary_sensitivity_frequency,
+                      "rad/s; 0 where at rest")
+        .def_readonly("complementary_bandwidth", &Robustness::complementary_bandwidth,
+                      "rad/s, highest frequency at which |L/(1 + L)| falls through 1/sqrt(2); None for none")
         .def_property_readonly("gain_crossovers", [](const Robustness& r) { return py::tuple(py::cast(r.gain_crossovers)); })
-        .def_property_readonly("phase_crossovers", [](const Robustness& r) { return py::tuple(py::cast(r.phase_crossovers)); })
+        .def_property_readonly("phase_crossovers", [](const Robustness& r) { return py::tuple(py::cast(r.phase_crossovers)); },
+                               "as far as they matter: at most 1000")
+        .def_readonly("phase_crossovers_capped", &Robustness::phase_crossovers_capped, "there are more")
         .def("__eq__", [](const Robustness& a, const Robustness& b) { return a == b; }, py::is_operator())
         .def("__repr__", [](const Robustness& r) { return text_of(r); });
+    const auto drawn = [](const char* function) {
+        return [function](const py::object& margins) { return py::module_::import("tauwright.plot").attr(function)(margins); };
+    };
+    py::class_<LoopRobustness, Robustness>(m, "LoopRobustness", "What robustness returns: margins that know their loop and can draw it.")
+        .def_readonly("process", &LoopRobustness::process)
+        .def_readonly("settings", &LoopRobustness::settings, "PidSettings or InternalModelController; None of an open loop")
+        .def_readonly("scan_time", &LoopRobustness::scan_time, "s, or None")
+        .def_readonly("extra_delay", &LoopRobustness::extra_delay, "s")
+        .def("plot", drawn("open_loop_figure"),
+             "A Matplotlib Figure of the open loop on the complex plane with its closest approach to -1.")
+        .def("plot_sensitivity", drawn("sensitivity_figure"),
+             "A Matplotlib Figure of |S| and |T| over frequency with peaks and bandwidths.");
     m.def("robustness", &robustness_of, "process"_a, "settings"_a = py::none(), py::kw_only(), "scan_time"_a = py::none(),
           "extra_delay"_a = 0.0,
           "Margins, sensitivity peaks and a stability verdict with exact dead time.\n\n"
-          "robustness(L): of an open loop; robustness(G, settings): of process and settings, every filter included.\n"
-          "scan_time: half of it stands in for sampling; extra_delay: dead time added; both in seconds");
+          "robustness(L): of an open loop; robustness(G, settings): of process and settings, every filter included;\n"
+          "robustness(G, controller): under the exact controller that synthesize gave, of the same or another process\n"
+          "scan_time: the loop as it runs, the block once a scan and its output held; extra_delay: dead time added; both in s");
 }
 
-std::string text_of(const Duty& d) {
-    return Line("Duty")
-        .unless(0.0, "setpoint_step", d.setpoint_step)
-        .unless(0.0, "load_step", d.load_step)
-        .unless(0.0, "load_time", d.load_time, "s")
-        .unless(0.0, "noise", d.noise)
-        .add("scan_time", d.scan_time, "s")
-        .add("output", tw::text_of(d.output_low) + " to " + tw::text_of(d.output_high))
-        .add("rest_output", d.rest_output)
-        .add("rest_process_value", d.rest_process_value)
-        .done();
-}
-
-void bind_simulation(py::module_& m) {
-    py::class_<Duty>(m, "Duty",
-                     "What a loop must face, about an operating point; percent of span unless said otherwise. Immutable.\n\n"
-                     "setpoint_step: at time 0            load_step: at the process input, from load_time (s) on\n"
-                     "noise: standard deviation of the measurement noise; seed: equal seeds give equal trends\n"
-                     "scan_time: s                        output_low, output_high: limits of the output\n"
-                     "rest_output, rest_process_value: where the process rests and the trend starts; None: the middle of\n"
-                     "the limits, and 50 (tune takes them from the record)")
-        .def(py::init([](double setpoint_step, double load_step, double load_time, double noise, std::uint64_t seed,
-                         std::optional<double> scan_time, double output_low, double output_high,
-                         std::optional<double> rest_output, std::optional<double> rest_process_value) {
-                 const Duty duty{.setpoint_step = setpoint_step,
-                                 .load_step = load_step,
-                                 .load_time = load_time,
-                                 .noise = noise,
-                                 .seed = seed,
-                                 .scan_time = scan_time,
-                                 .output_low = output_low,
-                                 .output_high = output_high,
-                                 .rest_output = rest_output,
-                                 .rest_process_value = rest_process_value};
-                 tw::check(duty);
-                 return duty;
-             }),
-             "setpoint_step"_a = 0.0, py::kw_only(), "load_step"_a = 0.0, "load_time"_a = 0.0, "noise"_a = 0.0, "seed"_a = 1,
-             "scan_time"_a = py::none(), "output_low"_a = 0.0, "output_high"_a = 100.0, "rest_output"_a = py::none(),
-             "rest_process_value"_a = py::none())
-        .def_readonly("setpoint_step", &Duty::setpoint_step)
-        .def_readonly("load_step", &Duty::load_step)
-        .def_readonly("load_time", &Duty::load_time, "s")
-        .def_readonly("noise", &Duty::noise)
-        .def_readonly("seed", &Duty::seed)
-        .def_readonly("scan_time", &Duty::scan_time, "s")
-        .def_readonly("output_low", &Duty::output_low)
-        .def_readonly("output_high", &Duty::output_high)
-        .def_readonly("rest_output", &Duty::rest_output)
-        .def_readonly("rest_process_value", &Duty::rest_process_value)
-        .def("__eq__", [](const Duty& a, const Duty& b) { return a == b; }, py::is_operator())
-        .def("__repr__", [](const Duty& d) { return text_of(d); });
-
-    py::class_<Trend>(m, "Trend", "A closed-loop trend, one value a scan.")
-        .def_property_readonly("time_s", [](const Trend& t) { return array_from(t.time_s); })
-        .def_property_readonly("setpoint", [](const Trend& t) { return array_from(t.setpoint); })
-        .def_property_readonly("process_value", [](const Trend& t) { return array_from(t.process_value); },
-                               "the process's own; the controller sees it with the duty's noise")
-        .def_property_readonly("output", [](const Trend& t) { return array_from(t.output); })
-        .def_readonly("duty", &Trend::duty)
-        .def_readonly("limited", &Trend::limited, "the output stood on a limit at least once")
-        .def("__len__", &Trend::size)
-        .def("__repr__", [](const Trend& t) {
-            return "Trend(" + std::to_string(t.size()) + " scans over " + short_text(t.time_s.back() - t.time_s.front()) + " s" +
-                   (t.limited ? ", output limited)" : ")");
-        });
-    m.def("simulate",
-          [](const tw::TransferFunction& G, const tw::PidSettings& settings, const Duty& duty, double horizon) {
-              return tw::simulate(G, settings, duty, horizon);
-          },
-          "G"_a, "settings"_a, "duty"_a, py::kw_only(), "horizon"_a, py::call_guard<py::gil_scoped_release>(),
-          "Runs the sampled controller against the exact process for horizon seconds; the duty needs a scan_time.");
-
-    py::class_<Figures>(m, "Figures", "Figures of a trend. Times count from the step.")
-        .def_readonly("overshoot_percent", &Figures::overshoot_percent, "of the set-point step; None without one")
-        .def_readonly("settling_time", &Figures::settling_time,
-                      "s until it stays within 2 % of the set-point step; None where it does not within the horizon")
-        .def_readonly("peak_load_error", &Figures::peak_load_error, "largest |error| after the load step; None without one")
-        .def_readonly("integrated_absolute_error", &Figures::integrated_absolute_error, "process value times s")
-        .def_readonly("valve_travel", &Figures::valve_travel, "sum of |output changes|, from the rest output on")
-        .def("__eq__", [](const Figures& a, const Figures& b) { return a == b; }, py::is_operator())
-        .def("__repr__", [](const Figures& f) {
-            return Line("Figures")
-                .add("overshoot", optional_text(f.overshoot_percent), "%")
-                .add("settling_time", optional_text(f.settling_time), "s")
-                .add("peak_load_error", optional_text(f.peak_load_error))
-                .add("integrated_absolute_error", short_text(f.integrated_absolute_error))
-                .add("valve_travel", short_text(f.valve_travel))
+void bind_delay_budget(py::module_& m) {
+    py::class_<DelayBudget>(m, "DelayBudget",
+                            "What takes part in the dead time that the loop feels, s, and in its working gain: the usual first-order\n"
+                            "estimates of what robustness with the scan time has exactly.")
+        .def_readonly("process_dead_time", &DelayBudget::process_dead_time)
+        .def_readonly("half_scan", &DelayBudget::half_scan, "sampling and hold")
+        .def_readonly("extra_delay", &DelayBudget::extra_delay, "computation, transport")
+        .def_readonly("measurement_filter_time", &DelayBudget::measurement_filter_time)
+        .def_property_readonly("total", &DelayBudget::total, "s, the sum of these")
+        .def_readonly("working_gain", &DelayBudget::working_gain,
+                      "backward integration raises the gain by scan_time / (2 integral_time)")
+        .def("__eq__", [](const DelayBudget& a, const DelayBudget& b) { return a == b; }, py::is_operator())
+        .def("__repr__", [](const DelayBudget& b) {
+            return Line("DelayBudget")
+                .add("process_dead_time", short_text(b.process_dead_time), "s")
+                .add("half_scan", short_text(b.half_scan), "s")
+                .add("extra_delay", short_text(b.extra_delay), "s")
+                .add("measurement_filter_time", short_text(b.measurement_filter_time), "s")
+                .add("total", short_text(b.total()), "s")
+                .add("working_gain", short_text(b.working_gain))
                 .done();
         });
-    m.def("figures", &tw::figures, "trend"_a, py::call_guard<py::gil_scoped_release>(), "Figures of a trend.");
+    m.def("delay_budget",
+          [](const tw::TransferFunction& G, const tw::PidSettings& settings, std::optional<double> scan_time, double extra_delay) {
+              return tw::delay_budget(G, settings, {.scan_time = scan_time, .extra_delay = extra_delay});
+          },
+          "G"_a, "settings"_a, py::kw_only(), "scan_time"_a = py::none(), "extra_delay"_a = 0.0,
+          "Where the loop's effective dead time comes from, all in s.");
 }
 
 }  // namespace
 
 void bind_assess(py::module_& m) {
+    bind_crossovers(m);
     bind_robustness(m);
-    bind_simulation(m);
+    bind_delay_budget(m);
 }
 
 }  // namespace binding

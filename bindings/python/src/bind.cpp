@@ -151,6 +151,16 @@ py::array_t<Complex, py::array::c_style> complex_from(const char* name, py::hand
     return numbers;
 }
 
+py::array_t<double, py::array::c_style> reals_from(const char* name, py::handle value) {
+    const py::array array = any_array(name, value);
+    if (!is_real(array))
+        throw Error(error_code::out_of_domain,
+                    std::string(name) + " holds elements of type " + kind_of(array) + "; give real numbers");
+    const auto numbers = py::array_t<double, py::array::c_style | py::array::forcecast>::ensure(array);
+    if (!numbers) throw py::error_already_set();
+    return numbers;
+}
+
 py::str shown(const std::string& bytes) {
     return py::reinterpret_steal<py::str>(
         PyUnicode_DecodeUTF8(bytes.data(), static_cast<py::ssize_t>(bytes.size()), "replace"));
@@ -166,5 +176,7 @@ std::string short_text(double value) {
     const auto end = std::to_chars(buffer, buffer + sizeof buffer, value, std::chars_format::general, 6);
     return {buffer, end.ptr};
 }
+
+std::string optional_text(const std::optional<double>& value) { return value ? short_text(*value) : "None"; }
 
 }  // namespace binding

@@ -25,16 +25,20 @@ namespace tw = tauwright;
 using namespace py::literals;
 using Complex = std::complex<double>;
 
-// One function a floor, called by the module in the order of the floors.
+// A function or more a floor, called by the module in the order of the floors.
 void bind_core(py::module_& m);
 void bind_model(py::module_& m);
 void bind_identify(py::module_& m);
 void bind_control(py::module_& m);
 void bind_run(py::module_& m);
 void bind_discretize(py::module_& m);
+void bind_instruments(py::module_& m);
 void bind_assess(py::module_& m);
+void bind_trends(py::module_& m);
+void bind_uncertain(py::module_& m);
 void bind_synthesize(py::module_& m);
 void bind_tune(py::module_& m);
+void bind_audit(py::module_& m);
 
 /// A one-dimensional array of real numbers: any array-like of whole or floating numbers, strided or
 /// not. Throws `wrong_length` for another shape and `out_of_domain` for another kind of element.
@@ -56,14 +60,16 @@ py::tuple tuple_from(const std::vector<double>& values);
 /// Any array-like of numbers as complex ones; throws `out_of_domain` for other elements.
 py::array_t<Complex, py::array::c_style> complex_from(const char* name, py::handle values);
 
-/// f at one number or at every element of an array of any shape.
-template <class F>
-py::object evaluated(const F& f, py::handle s) {
-    const auto points = complex_from("s", s);
+/// The same as real ones; throws `out_of_domain` for complex elements too.
+py::array_t<double, py::array::c_style> reals_from(const char* name, py::handle values);
+
+/// f at every element of an array of any shape; without the interpreter's lock where there are many.
+template <class F, class In>
+py::object evaluated_over(const F& f, const py::array_t<In, py::array::c_style>& points) {
     if (points.ndim() == 0) return py::cast(Complex(f(*points.data())));
     py::array_t<Complex, py::array::c_style> values(
         std::vector<py::ssize_t>(points.shape(), points.shape() + points.ndim()));
-    const Complex* in = points.data();
+    const In* in = points.data();
     Complex* out = values.mutable_data();
     const py::ssize_t n = points.size();
     const auto fill = [&] {
@@ -76,6 +82,16 @@ py::object evaluated(const F& f, py::handle s) {
         fill();
     }
     return values;
+}
+
+/// f at one number or at every element of an array, complex or real.
+template <class F>
+py::object evaluated(const F& f, py::handle s, const char* name = "s") {
+    return evaluated_over(f, complex_from(name, s));
+}
+template <class F>
+py::object evaluated_at_reals(const F& f, py::handle x, const char* name) {
+    return evaluated_over(f, reals_from(name, x));
 }
 
 template <class E>
@@ -138,5 +154,15 @@ py::str shown(const std::string& bytes);
 std::string text_of_range(const tw::Range& range);
 /// Six significant digits, for a repr that is read rather than read back.
 std::string short_text(double value);
+std::string optional_text(const std::optional<double>& value);
+std::string text_of(const tw::ValveSettings& valve);
+std::string text_of(const tw::TransmitterSettings& transmitter);
+
+/// What it was the worst case of, so that it can be drawn.
+struct KnownWorstCase : tw::WorstCase {
+    tw::TransferFunction process;
+    tw::PidSettings settings;
+    double extra_delay = 0.0;
+};
 
 }  // namespace binding

@@ -11,9 +11,13 @@ PYBIND11_MODULE(_tauwright, m) {
     bind_control(m);
     bind_run(m);
     bind_discretize(m);
+    bind_instruments(m);
     bind_assess(m);
+    bind_trends(m);
+    bind_uncertain(m);
     bind_synthesize(m);
     bind_tune(m);
+    bind_audit(m);
     // Names belong to the package, not to the file they come from.
     for (auto item : py::cast<py::dict>(m.attr("__dict__")))
         if (py::isinstance<py::type>(item.second)) item.second.attr("__module__") = "tauwright";

@@ -10,8 +10,9 @@ namespace run = tw::run;
 class PidBlock {
 public:
     PidBlock(const tw::PidSettings& settings, double scan_time, double output_low, double output_high,
-             std::optional<double> initial_output) {
-        const auto coefficients = tw::discretize(settings, scan_time);
+             std::optional<double> initial_output, std::optional<double> output_rate_limit) {
+        auto coefficients = tw::discretize(settings, scan_time);
+        if (output_rate_limit) coefficients.output_change_per_scan = checked_rate(*output_rate_limit) * scan_time;
         for (const auto& [name, value] : {std::pair{"output_low", output_low}, {"output_high", output_high},
                                           {"initial_output", initial_output.value_or(0.0)}})
             if (!tw::is_finite(value))
@@ -45,6 +46,15 @@ public:
     }
 
 private:
+    static double checked_rate(double rate) {
+        if (!tw::is_finite(rate))
+            throw tw::Error(tw::error_code::not_finite, "output_rate_limit is " + tw::text_of(rate) + "; give a finite number");
+        if (!(rate > 0.0))
+            throw tw::Error(tw::error_code::out_of_domain,
+                            "output_rate_limit is " + tw::text_of(rate) + "; give a number above 0, or None for no limit");
+        return rate;
+    }
+
     run::PidBlock block_;
     double manual_output_ = 0.0;
 };
@@ -79,9 +89,11 @@ void bind_run(py::module_& m) {
     py::class_<PidBlock>(m, "PidBlock",
                          "A PID controller that runs once per scan: two degrees of freedom, filtered derivative and measurement\n"
                          "filter on the process value, output limits with anti-windup, manual and automatic without a bump.\n\n"
-                         "initial_output: the first step returns it; without it the integral starts at output_low")
-        .def(py::init<const tw::PidSettings&, double, double, double, std::optional<double>>(), "settings"_a, py::kw_only(),
-             "scan_time"_a, "output_low"_a = 0.0, "output_high"_a = 100.0, "initial_output"_a = py::none())
+                         "initial_output: the first step returns it; without it the integral starts at output_low\n"
+                         "output_rate_limit: fastest change of the output in automatic, per s; None: no limit")
+        .def(py::init<const tw::PidSettings&, double, double, double, std::optional<double>, std::optional<double>>(),
+             "settings"_a, py::kw_only(), "scan_time"_a, "output_low"_a = 0.0, "output_high"_a = 100.0,
+             "initial_output"_a = py::none(), "output_rate_limit"_a = py::none())
         .def("step", &PidBlock::step, "setpoint"_a, "process_value"_a,
              "One scan; returns the output. A value that is not finite, or beyond 1e150, holds the output and sets flag_bad_input.")
         .def_property_readonly("flags", [](const PidBlock& b) { return b.block().flags(); },

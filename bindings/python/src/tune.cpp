@@ -10,6 +10,13 @@ using tw::TuningRequest;
 using tw::TuningSheet;
 
 // A member of the as-found or the proposed controller, None where there is no such controller.
+template <auto side>
+std::optional<KnownWorstCase> worst_case_of(const tw::TuningSheet& sheet) {
+    const auto& controller = sheet.*side;
+    if (!controller || !controller->worst_case) return std::nullopt;
+    return KnownWorstCase{*controller->worst_case, *sheet.model, controller->settings, 0.5 * sheet.duty.scan_time.value_or(0.0)};
+}
+
 template <auto controller, auto member>
 py::object of(const TuningSheet& sheet) {
     const std::optional<SheetController>& c = sheet.*controller;
@@ -90,7 +97,7 @@ void bind_sheet(py::module_& m) {
         });
     py::class_<S>(m, "TuningSheet", "The record of a tuning: what was seen, what was decided, what to key in, how to go back.")
         .def("text", [](const S& s) { return shown(s.text()); }, "Plain text of 78 columns.")
-        .def("json", &S::json, py::call_guard<py::gil_scoped_release>(), "JSON, schema tauwright-tuning-sheet version 1; from_json reads it back.")
+        .def("json", &S::json, py::call_guard<py::gil_scoped_release>(), "JSON, schema tauwright-tuning-sheet; from_json reads it back.")
         .def_static("from_json", [](std::string_view json) { return S::from_json(json); }, "json"_a, py::call_guard<py::gil_scoped_release>(), "Reads what json() wrote.")
         .def_readonly("library_version", &S::library_version)
         .def_readonly("loop_name", &S::loop_name)
@@ -110,10 +117,16 @@ void bind_sheet(py::module_& m) {
         .def_property_readonly("entered", &of<&S::proposed, &C::entered>, "the numbers to key in, or None")
         .def_property_readonly("margins", &of<&S::proposed, &C::margins>, "Robustness of the numbers proposed, or None")
         .def_property_readonly("figures", &of<&S::proposed, &C::figures>, "Figures of their trend, or None")
+        .def_property_readonly("worst_case", &worst_case_of<&S::proposed>,
+                               "WorstCase over the fit's joint 95 % confidence region, or None")
+        .def_property_readonly("valve_cycle", &of<&S::proposed, &C::valve_cycle>,
+                               "ValveCycle: what the duty's valve makes of the loop; None for a perfect one, or when withheld")
         .def_property_readonly("as_found_settings", &of<&S::as_found, &C::settings>)
         .def_property_readonly("as_found_entered", &of<&S::as_found, &C::entered>, "the roll-back values")
         .def_property_readonly("as_found_margins", &of<&S::as_found, &C::margins>)
         .def_property_readonly("as_found_figures", &of<&S::as_found, &C::figures>)
+        .def_property_readonly("as_found_worst_case", &worst_case_of<&S::as_found>)
+        .def_property_readonly("as_found_valve_cycle", &of<&S::as_found, &C::valve_cycle>)
         .def_property_readonly("findings", [](const S& s) { return py::tuple(py::cast(s.findings())); })
         .def_property_readonly("advice", [](const S& s) { return tw::name_of(s.advice()); })
         .def_property_readonly("withheld", [](const S& s) { return py::tuple(py::cast(s.withheld)); },

@@ -1,6 +1,8 @@
-"""The tuning sheet as one page to pin up. Needs Matplotlib; uses no global drawing state.
+"""The tuning sheet as one page to pin up, and pictures of results. Needs Matplotlib; uses no global drawing state.
 
-figure_of(record, sheet) returns the page, save_figure(record, sheet, path) writes it.
+figure_of(record, sheet) returns the page, save_figure(record, sheet, path) writes it. open_loop_figure(margins) and
+sensitivity_figure(margins) draw what robustness returned, trend_figure(trend) a trend, worst_case_figure(worst) a worst case;
+each returns a Matplotlib Figure with an Agg canvas, and is what the results' own plot() calls.
 """
 
 from __future__ import annotations
@@ -13,26 +15,19 @@ from typing import Any
 
 import numpy as np
 import numpy.typing as npt
-from matplotlib import rc_context, rcParamsDefault  # type: ignore[import]
 from matplotlib.backends.backend_agg import FigureCanvasAgg  # type: ignore[import]
 from matplotlib.figure import Figure  # type: ignore[import]
 
 import tauwright as tw
+from tauwright.loop_plots import open_loop_figure, sensitivity_figure, worst_case_figure
+from tauwright.plot_style import (
+    ACCENT, FOUND, FOUND_DASHES, RULE, SAMPLE, SHADE, Array, Axes, Curve, draw_arrow, draw_plane, limits, open_loop, styled,
+    time_scale)
 from tauwright.sheet_rows import Row, margins_rows, number, settings_rows
+from tauwright.trend_plots import trend_figure
 
-__all__ = ["figure_of", "save_figure"]
+__all__ = ["figure_of", "open_loop_figure", "save_figure", "sensitivity_figure", "trend_figure", "worst_case_figure"]
 
-_Axes = Any
-_Array = npt.NDArray[np.float64]
-
-# One accent that prints as a dark gray; lines differ by style as well, never by color alone.
-_ACCENT, _FOUND, _SAMPLE, _SHADE, _RULE = "#0b4a80", "#5f5f5f", "#8c8c8c", "#e3e3e3", "#c4c4c4"
-_FOUND_DASHES = (0, (4, 2))
-_STYLE: dict[str, Any] = {
-    "font.size": 8.0, "axes.titlesize": 9.0, "axes.labelsize": 8.0, "xtick.labelsize": 7.5, "ytick.labelsize": 7.5,
-    "legend.fontsize": 7.5, "legend.frameon": False, "axes.spines.top": False, "axes.spines.right": False,
-    "axes.linewidth": 0.6, "lines.linewidth": 1.3, "axes.titlelocation": "left", "axes.titleweight": "bold",
-}
 _TREND_TITLE = "The loop: trends to expect"
 _GAP_FACTOR = 5.0  # a step of the stamps this many times the usual one is a gap
 
@@ -41,23 +36,7 @@ def _unit(value_range: tw.Range | None, fallback: str) -> str:
     return value_range.unit if value_range is not None and value_range.unit else fallback
 
 
-def _time_scale(span_s: float) -> tuple[float, str]:
-    for seconds, unit in ((86400.0, "days"), (3600.0, "h"), (60.0, "min")):
-        if span_s >= 5.0 * seconds:
-            return seconds, unit
-    return 1.0, "s"
-
-
-def _limits(*arrays: _Array) -> tuple[float, float]:
-    values = np.concatenate([a[np.isfinite(a)] for a in arrays])
-    if values.size == 0:
-        return 0.0, 1.0
-    low, high = float(values.min()), float(values.max())
-    margin = 0.07 * (high - low) or 0.05 * abs(high) or 1.0
-    return low - margin, high + margin
-
-
-def _left_out(t: _Array, good: npt.NDArray[np.bool_]) -> list[tuple[float, float]]:
+def _left_out(t: Array, good: npt.NDArray[np.bool_]) -> list[tuple[float, float]]:
     """The stretches without a usable sample: runs of bad ones with their neighbors, and holes in the stamps."""
     usable = np.flatnonzero(good)
     steps = np.diff(t)
@@ -73,13 +52,13 @@ def _left_out(t: _Array, good: npt.NDArray[np.bool_]) -> list[tuple[float, float
     return stretches
 
 
-def _message(ax: _Axes, text: str, height: float = 0.5) -> None:
+def _message(ax: Axes, text: str, height: float = 0.5) -> None:
     wrapped = "\n".join(textwrap.fill(line, 58) for line in text.splitlines())
     ax.text(0.5, height, wrapped, transform=ax.transAxes, ha="center", va="center", color="black", parse_math=False,
-            bbox={"facecolor": "white", "edgecolor": _RULE, "linewidth": 0.6, "pad": 5.0}, zorder=5)
+            bbox={"facecolor": "white", "edgecolor": RULE, "linewidth": 0.6, "pad": 5.0}, zorder=5)
 
 
-def _title_over_key(ax: _Axes, text: str) -> None:
+def _title_over_key(ax: Axes, text: str) -> None:
     """The title, with the key to the lines in one row under it, outside the data."""
     ax.set_title(text, pad=17)
     handles, _ = ax.get_legend_handles_labels()
@@ -88,28 +67,28 @@ def _title_over_key(ax: _Axes, text: str) -> None:
                   columnspacing=1.4, handletextpad=0.5)
 
 
-def _draw_record(top: _Axes, bottom: _Axes, record: tw.Record, sheet: tw.TuningSheet) -> None:
-    scale, unit = _time_scale(float(record.time_s[-1] - record.time_s[0]))
+def _draw_record(top: Axes, bottom: Axes, record: tw.Record, sheet: tw.TuningSheet) -> None:
+    scale, unit = time_scale(float(record.time_s[-1] - record.time_s[0]))
     t = (record.time_s - record.time_s[0]) / scale
     good, value, output = record.good, record.process_value, record.output
     fitted = sheet.fit.fitted(record)
     for ax in (top, bottom):
         for i, (a, b) in enumerate(_left_out(t, good)):
-            ax.axvspan(a, b, color=_SHADE, lw=0, zorder=0, label="no usable samples" if ax is top and i == 0 else None)
-    top.plot(t[good], value[good], ".", ms=3.4, color=_SAMPLE, mew=0, label="samples", zorder=2)
+            ax.axvspan(a, b, color=SHADE, lw=0, zorder=0, label="no usable samples" if ax is top and i == 0 else None)
+    top.plot(t[good], value[good], ".", ms=3.4, color=SAMPLE, mew=0, label="samples", zorder=2)
     if fitted.size:
-        top.plot(t, fitted, color=_ACCENT, lw=1.1, label="fitted model", zorder=3)
+        top.plot(t, fitted, color=ACCENT, lw=1.1, label="fitted model", zorder=3)
     if not good.all():
         # On the lower edge: what a bad sample says is not to be read as a value.
         top.plot(t[~good], np.full(int((~good).sum()), 0.035), "x", ms=4, mew=0.9, color="black",
                  transform=top.get_xaxis_transform(), label="left out (bad)", zorder=4)
-    top.set_ylim(*_limits(value[good], fitted))
+    top.set_ylim(*limits(value[good], fitted))
     _title_over_key(top, "The test: record and fitted model")
     top.set_ylabel(f"process value, {_unit(sheet.process_value_range, 'as recorded')}", parse_math=False)
     top.tick_params(labelbottom=False)
 
     bottom.plot(t, output, drawstyle="steps-post", color="black", lw=1.1)
-    bottom.set_ylim(*_limits(output))
+    bottom.set_ylim(*limits(output))
     bottom.set_xlim(float(t[0]), float(t[-1]) if t.size > 1 else float(t[0]) + 1.0)
     bottom.set_ylabel(f"output, {_unit(sheet.output_range, 'as rec.')}", parse_math=False)
     begins = f" from {sheet.first_stamp}" if sheet.first_stamp else ""
@@ -144,15 +123,15 @@ def _setpoint_label(sheet: tw.TuningSheet) -> str:
     return f"set point, {step:+g} % of span" if step != 0 else "set point"
 
 
-def _mark_load(ax: _Axes, sheet: tw.TuningSheet, scale: float) -> None:
+def _mark_load(ax: Axes, sheet: tw.TuningSheet, scale: float) -> None:
     duty = sheet.duty
     if duty.load_step != 0 and duty.load_time <= sheet.trend_horizon:
-        ax.axvline(duty.load_time / scale, color=_RULE, lw=0.8, zorder=0)
+        ax.axvline(duty.load_time / scale, color=RULE, lw=0.8, zorder=0)
         ax.text(duty.load_time / scale, 0.99, f" load {duty.load_step:+g} % of output", transform=ax.get_xaxis_transform(),
                 va="top", ha="left", fontsize=7.5)
 
 
-def _draw_trends(top: _Axes, bottom: _Axes, sheet: tw.TuningSheet) -> None:
+def _draw_trends(top: Axes, bottom: Axes, sheet: tw.TuningSheet) -> None:
     top.tick_params(labelbottom=False)
     pv_range, op_range = sheet.process_value_range, sheet.output_range
     top.set_ylabel(f"process value, {_unit(pv_range, '%')}", parse_math=False)
@@ -167,11 +146,11 @@ def _draw_trends(top: _Axes, bottom: _Axes, sheet: tw.TuningSheet) -> None:
             ax.set_yticks([])
         bottom.set_xlabel("")
         return
-    scale, unit = _time_scale(sheet.trend_horizon)
-    values: list[_Array] = []
-    outputs: list[_Array] = []
-    found: dict[str, Any] = {"color": _FOUND, "ls": _FOUND_DASHES, "zorder": 2}
-    proposed: dict[str, Any] = {"color": _ACCENT, "ls": "-", "zorder": 3}
+    scale, unit = time_scale(sheet.trend_horizon)
+    values: list[Array] = []
+    outputs: list[Array] = []
+    found: dict[str, Any] = {"color": FOUND, "ls": FOUND_DASHES, "zorder": 2}
+    proposed: dict[str, Any] = {"color": ACCENT, "ls": "-", "zorder": 3}
     for settings, name, style in ((sheet.as_found_settings, "as found", found), (sheet.settings, "proposed", proposed)):
         if settings is None:
             continue
@@ -188,9 +167,9 @@ def _draw_trends(top: _Axes, bottom: _Axes, sheet: tw.TuningSheet) -> None:
         values.append(value)
         outputs.append(output)
     _mark_load(top, sheet, scale)
-    low, high = _limits(*values)
+    low, high = limits(*values)
     top.set_ylim(low, high + 0.06 * (high - low))
-    bottom.set_ylim(*_limits(*outputs))
+    bottom.set_ylim(*limits(*outputs))
     bottom.set_xlim(0.0, sheet.trend_horizon / scale)
     bottom.set_xlabel(f"time, {unit}")
     _title_over_key(top, _TREND_TITLE)
@@ -198,45 +177,28 @@ def _draw_trends(top: _Axes, bottom: _Axes, sheet: tw.TuningSheet) -> None:
         _message(top, _withheld(sheet), height=0.2)
 
 
-def _open_loop(sheet: tw.TuningSheet, settings: tw.PidSettings, w: _Array) -> npt.NDArray[np.complex128]:
-    assert sheet.model is not None
-    s = 1j * w
-    half_scan = 0.5 * (sheet.duty.scan_time or 0.0)
-    return np.asarray(sheet.model(s) * settings(s) * np.exp(-half_scan * s))
-
-
-def _frequencies(sheet: tw.TuningSheet) -> _Array:
+def _frequencies(sheet: tw.TuningSheet) -> Array:
     assert sheet.speed is not None
     dead_time = sheet.speed.effective_dead_time
     pace = max(sheet.speed.time_constant + dead_time, 1e-12)
     # Three turns of the dead time say everything; a spiral of many more only blackens the paper.
     highest = min(1e3 / pace, 6.0 * np.pi / dead_time) if dead_time > 0 else 1e3 / pace
-    return np.geomspace(1e-4 / pace, highest, 8001)
+    if sheet.duty.scan_time is not None:
+        highest = np.pi / sheet.duty.scan_time
+    return np.geomspace(min(1e-4 / pace, 1e-3 * highest), highest, 8001)
 
 
-def _draw_curve(ax: _Axes, curve: npt.NDArray[np.complex128], box: tuple[float, float, float, float], **style: Any) -> None:
-    ax.plot(curve.real, curve.imag, **style)
-    # An arrow where the curve is well inside the picture, toward higher frequency.
-    inside = np.flatnonzero((curve.real > box[0]) & (curve.real < box[1]) & (curve.imag > box[2]) & (curve.imag < box[3]))
-    if inside.size < 3:
-        return
-    length = np.concatenate([[0.0], np.cumsum(np.abs(np.diff(curve[inside])))])
-    k = inside[int(np.searchsorted(length, 0.22 * length[-1]))]
-    if k + 1 < curve.size:
-        ax.annotate("", xy=(curve[k + 1].real, curve[k + 1].imag), xytext=(curve[k].real, curve[k].imag),
-                    arrowprops={"arrowstyle": "-|>", "color": style["color"], "lw": 0, "mutation_scale": 10})
-
-
-def _draw_closest(ax: _Axes, sheet: tw.TuningSheet, settings: tw.PidSettings, margins: tw.Robustness) -> None:
+def _draw_closest(ax: Axes, sheet: tw.TuningSheet, settings: tw.PidSettings, margins: tw.Robustness) -> None:
     peak, at = margins.max_sensitivity, margins.max_sensitivity_frequency
     if peak is None or at is None or not np.isfinite(peak) or not np.isfinite(at):
         return
     turn = np.linspace(0.0, 2.0 * np.pi, 361)
-    ax.plot(-1.0 + np.cos(turn) / peak, np.sin(turn) / peak, color=_ACCENT, lw=0.9, ls=(0, (1, 1.2)),
+    ax.plot(-1.0 + np.cos(turn) / peak, np.sin(turn) / peak, color=ACCENT, lw=0.9, ls=(0, (1, 1.2)),
             label=f"circle of closest approach,\nradius 1/Ms = {number(1.0 / peak, 3)},\nreached at {number(at, 3)} rad/s")
-    closest = complex(_open_loop(sheet, settings, np.array([at]))[0])
+    assert sheet.model is not None
+    closest = complex(open_loop(sheet.model, settings, sheet.duty.scan_time, 0.0, np.array([at]))[0])
     ax.plot([-1.0, closest.real], [0.0, closest.imag], color="black", lw=0.9)
-    ax.plot([closest.real], [closest.imag], "o", ms=3.5, color=_ACCENT)
+    ax.plot([closest.real], [closest.imag], "o", ms=3.5, color=ACCENT)
     middle = 0.5 * (closest - 1.0)
     # Beside the line, on the side away from the real axis.
     ax.annotate(f"Ms = {number(peak, 3)}", xy=(middle.real, middle.imag), xytext=(2, -6 if closest.imag < 0 else 6),
@@ -244,40 +206,34 @@ def _draw_closest(ax: _Axes, sheet: tw.TuningSheet, settings: tw.PidSettings, ma
                 fontweight="bold", bbox={"facecolor": "white", "edgecolor": "none", "pad": 0.8, "alpha": 0.85}, zorder=5)
 
 
-def _draw_plane(ax: _Axes, sheet: tw.TuningSheet) -> None:
+def _draw_curve(ax: Axes, curve: Curve, box: tuple[float, float, float, float], **style: Any) -> None:
+    ax.plot(curve.real, curve.imag, **style)
+    draw_arrow(ax, curve, box, style["color"])
+
+
+def _draw_plane(ax: Axes, sheet: tw.TuningSheet) -> None:
     ax.set_title("How close the open loop comes to -1")
-    ax.set_xlabel("real part of L(j\u03c9)")
-    ax.set_ylabel("imaginary part of L(j\u03c9)")
     box = (-2.6, 2.2, -1.75, 0.95)
-    ax.set_xlim(box[0], box[1])
-    ax.set_ylim(box[2], box[3])
-    ax.set_aspect("equal", adjustable="box")
-    ax.axhline(0.0, color=_RULE, lw=0.6, zorder=0)
-    ax.axvline(0.0, color=_RULE, lw=0.6, zorder=0)
-    turn = np.linspace(0.0, 2.0 * np.pi, 361)
-    ax.plot(np.cos(turn), np.sin(turn), color=_RULE, lw=0.6, zorder=0)
-    ax.text(0.72, 0.73, "|L| = 1", fontsize=7, color=_FOUND, ha="left", va="bottom")
-    ax.plot([-1.0], [0.0], "+", ms=9, mew=1.6, color="black", zorder=6)
-    ax.text(-1.03, 0.05, "-1", ha="right", va="bottom", fontweight="bold")
+    draw_plane(ax, box)
     if sheet.model is None or sheet.speed is None or (sheet.settings is None and sheet.as_found_settings is None):
         _message(ax, "No settings, no open loop.")
         return
-    w = _frequencies(sheet)
+    w, scan_time = _frequencies(sheet), sheet.duty.scan_time
     if sheet.as_found_settings is not None:
-        _draw_curve(ax, _open_loop(sheet, sheet.as_found_settings, w), box, color=_FOUND, ls=_FOUND_DASHES, lw=1.2, label="as found")
+        _draw_curve(ax, open_loop(sheet.model, sheet.as_found_settings, scan_time, 0.0, w), box, color=FOUND, ls=FOUND_DASHES, lw=1.2, label="as found")
     if sheet.settings is not None and sheet.margins is not None:
-        _draw_curve(ax, _open_loop(sheet, sheet.settings, w), box, color=_ACCENT, label="proposed")
+        _draw_curve(ax, open_loop(sheet.model, sheet.settings, scan_time, 0.0, w), box, color=ACCENT, label="proposed")
         _draw_closest(ax, sheet, sheet.settings, sheet.margins)
     elif sheet.as_found_settings is not None and sheet.as_found_margins is not None:
         _draw_closest(ax, sheet, sheet.as_found_settings, sheet.as_found_margins)
     ax.legend(loc="lower right", handlelength=2.6, borderaxespad=0.2)
 
 
-def _write_rows(ax: _Axes, y: float, step: float, heading: Row, rows: list[Row]) -> float:
+def _write_rows(ax: Axes, y: float, step: float, heading: Row, rows: list[Row]) -> float:
     for label, found, proposed in (heading, *rows):
         weight = "bold" if (label, found, proposed) == heading else "normal"
         ax.text(0.0, y, label, fontweight=weight, va="top", parse_math=False)
-        ax.text(0.53, y, found, fontweight=weight, va="top", ha="left", color=_FOUND, parse_math=False)
+        ax.text(0.53, y, found, fontweight=weight, va="top", ha="left", color=FOUND, parse_math=False)
         ax.text(0.78, y, proposed, fontweight="bold", va="top", ha="left", parse_math=False)
         y -= step
     return y
@@ -303,7 +259,7 @@ def _model_line(sheet: tw.TuningSheet) -> str:
     return ", ".join(parts)
 
 
-def _write_panel(ax: _Axes, sheet: tw.TuningSheet) -> None:
+def _write_panel(ax: Axes, sheet: tw.TuningSheet) -> None:
     ax.set_axis_off()
     ax.set_xlim(0.0, 1.0)
     ax.set_ylim(0.0, 1.0)
@@ -346,7 +302,7 @@ def _write_margin_notes(figure: Figure, sheet: tw.TuningSheet) -> None:
     figure.text(0.055, 0.962, name, fontsize=13, fontweight="bold", parse_math=False, va="baseline")
     source = PurePath(sheet.source).name if sheet.source else "arrays"
     figure.text(0.975, 0.962, f"record {source}, SHA-256 {sheet.input_sha256[:16]}..., tauwright {sheet.library_version}",
-                ha="right", fontsize=7.5, color=_FOUND, parse_math=False, va="baseline")
+                ha="right", fontsize=7.5, color=FOUND, parse_math=False, va="baseline")
     figure.text(0.055, 0.022, "Advice, not authority: a calculation from the data and model shown. A competent person responsible "
                 "for the plant reviews it before use and may reject it.\nNot for safety functions. All cautions, the change "
                 "record and the roll-back values are on the tuning sheet.", fontsize=8, va="bottom", linespacing=1.3,
@@ -373,13 +329,13 @@ def _compose(record: tw.Record, sheet: tw.TuningSheet) -> Figure:
 def figure_of(record: tw.Record, sheet: tw.TuningSheet) -> Figure:
     """One page: the record with its fit, the trends to expect, the open loop and its closest approach to -1, and the
     numbers. `sheet` is what tune(record, ...) returned. The Figure carries an Agg canvas; savefig writes it."""
-    with rc_context({**rcParamsDefault, "backend": "agg", **_STYLE}):
+    with styled():
         return _compose(record, sheet)
 
 
 def save_figure(record: tw.Record, sheet: tw.TuningSheet, path: str | os.PathLike[str]) -> None:
     """Writes the page of figure_of to a file; the format follows from its ending."""
-    with rc_context({**rcParamsDefault, "backend": "agg", **_STYLE}), warnings.catch_warnings():
+    with styled(), warnings.catch_warnings():
         # A name may hold characters that the font lacks; boxes stand in for them.
         warnings.filterwarnings("ignore", message="Glyph .* missing from current font")
         _compose(record, sheet).savefig(os.fspath(path), dpi=150)

@@ -20,6 +20,7 @@ _RANGE = "a list of low end, high end and unit"
 _LIMITS = "a list of low and high limit, null for none"
 _OBJECT = "an object"
 _WHOLE = "a whole number"
+_NUMBERS = "a list of numbers"
 
 _FORM = {
     **dict.fromkeys(
@@ -33,10 +34,14 @@ _FORM = {
 }
 _DUTY = {
     **dict.fromkeys(
-        ("setpoint_step", "load_step", "load_time", "noise", "scan_time", "output_low", "output_high", "rest_output",
-         "rest_process_value"), _NUMBER),
+        ("setpoint_step", "setpoint_ramp_time", "load_step", "load_time", "load_ramp_time", "noise", "scan_time", "output_low",
+         "output_high", "output_rate_limit", "rest_output", "rest_process_value"), _NUMBER),
+    **dict.fromkeys(("valve", "transmitter"), _OBJECT),
+    "disturbance": _NUMBERS,
     "seed": _WHOLE,
 }
+_VALVE = dict.fromkeys(("dead_band", "stick", "resolution", "travel_rate_per_s"), _NUMBER)
+_TRANSMITTER = dict.fromkeys(("lag", "resolution"), _NUMBER)
 _ENTERED = {
     **dict.fromkeys(
         ("gain", "proportional_band", "integral_time", "repeats", "integral_gain", "derivative_time",
@@ -81,6 +86,8 @@ def _fits(value: object, kind: str) -> bool:
         return isinstance(value, Mapping)
     if not isinstance(value, (list, tuple)):
         return False
+    if kind == _NUMBERS:
+        return all(map(_is_number, value))
     if kind == _LIMITS:
         return len(value) == 2 and all(x is None or _is_number(x) for x in value)
     return len(value) in (2, 3) and all(map(_is_number, value[:2])) and all(isinstance(x, str) for x in value[2:])
@@ -102,9 +109,19 @@ def _made(make: Callable[..., _T], data: object, kinds: Mapping[str, str], place
     return make(**_checked(data, kinds, place))
 
 
+def _duty_from(data: object) -> tw.Duty:
+    entries = _checked(data, _DUTY, "request.duty")
+    if "valve" in entries:
+        entries["valve"] = _made(tw.ValveSettings, entries["valve"], _VALVE, "request.duty.valve")
+    if "transmitter" in entries:
+        entries["transmitter"] = _made(tw.TransmitterSettings, entries["transmitter"], _TRANSMITTER, "request.duty.transmitter")
+    return tw.Duty(**entries)
+
+
 def request_from(data: object) -> tw.TuningRequest:
     """A TuningRequest from a mapping whose keys are the keyword arguments of TuningRequest; the values of form,
-    duty, as_found and identify are mappings in turn (ControllerForm, Duty, Entered, identify). null means not given.
+    duty, as_found and identify are mappings in turn (ControllerForm, Duty, Entered, identify), and so are valve and
+    transmitter of duty (ValveSettings, TransmitterSettings). null means not given.
 
     Raises RequestError for an unknown key or a value of the wrong kind, and tauwright.Error as the classes do.
     """
@@ -112,7 +129,7 @@ def request_from(data: object) -> tw.TuningRequest:
     if "form" in entries:
         entries["form"] = _made(tw.ControllerForm, entries["form"], _FORM, "request.form")
     if "duty" in entries:
-        entries["duty"] = _made(tw.Duty, entries["duty"], _DUTY, "request.duty")
+        entries["duty"] = _duty_from(entries["duty"])
     if "as_found" in entries:
         entries["as_found"] = _made(tw.Entered, entries["as_found"], _ENTERED, "request.as_found")
     if "identify" in entries:

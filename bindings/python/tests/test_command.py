@@ -89,6 +89,18 @@ def test_request_from_plain_data():
     assert request.as_found == tw.Entered(2, integral_time=30, action="direct")
     with pytest.raises(RequestError, match="'colour'"):
         request_from({"colour": 1})
+    duty = request_from({"duty": {
+        "scan_time": 1, "setpoint_ramp_time": 5, "load_ramp_time": 6, "output_rate_limit": 2, "disturbance": [1, 2.5],
+        "valve": {"stick": 0.5, "travel_rate_per_s": None}, "transmitter": {"lag": 3}}}).duty
+    assert duty == tw.Duty(scan_time=1, setpoint_ramp_time=5, load_ramp_time=6, output_rate_limit=2, disturbance=[1, 2.5],
+                           valve=tw.ValveSettings(stick=0.5), transmitter=tw.TransmitterSettings(lag=3))
+    for wrong, says in (({"valve": 3}, "give an object"), ({"valve": {"stuck": 1}}, "request.duty.valve has the unknown key 'stuck'"),
+                        ({"transmitter": {"lag": "long"}}, "request.duty.transmitter.lag"), ({"disturbance": [1, "a"]}, "list of numbers"),
+                        ({"disturbance": 1}, "list of numbers")):
+        with pytest.raises(RequestError, match=says):
+            request_from({"duty": wrong})
+    with pytest.raises(tw.Error, match="dead_band"):
+        request_from({"duty": {"valve": {"dead_band": -1}}})
 
 
 def every_kind_of_sheet():

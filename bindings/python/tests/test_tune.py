@@ -108,7 +108,7 @@ def test_json_is_read_back_and_compared(record):
     assert found["/loop_name"].earlier == json.dumps('A \u00b0C "x"', ensure_ascii=False)
     assert "/input_sha256" not in found and "->" in repr(found["/loop_name"])
     for text, code in (("", "file_malformed"), ("{}", "schema_unsupported"), ('{"schema":"x"}', "schema_unsupported"),
-                       (sheet.json().replace('"schema_version": 1', '"schema_version": 99'), "schema_unsupported"),
+                       (sheet.json().replace('"schema_version": 2', '"schema_version": 99'), "schema_unsupported"),
                        (sheet.json().replace('"loop_name"', '"lop_name"'), "file_malformed")):
         with refusal(code):
             tw.TuningSheet.from_json(text)
@@ -150,3 +150,16 @@ def test_other_threads_run_meanwhile():
         turns += 1
     worker.join()
     assert sheets[0].fit.gain == pytest.approx(0.8, rel=0.01) and turns > 1000
+
+
+def test_the_worst_case_over_the_fit_is_on_the_sheet():
+    # invariant: the sheet's is the one of the fit's 95 % region, within what half a scan for the sampling blurs
+    t, u, y = bump_test(3, lambda t: first_order_step(t, 0.8, 30.0, 7.3))
+    record = tw.Record(t, u, y + 0.05 * np.random.default_rng(5).standard_normal(len(t)), output_range=(0, 100, "%"),
+                       process_value_range=(0, 200, "degC"))
+    sheet = tw.tune(record, tw.TuningRequest(duty=tw.Duty(4, scan_time=0.5, valve=tw.ValveSettings(stick=0.5))))
+    again = tw.worst_case(sheet.model, sheet.settings, tw.Uncertainty.from_fit(sheet.fit), extra_delay=0.25)
+    assert sheet.worst_case.certified
+    assert sheet.worst_case.max_sensitivity == pytest.approx(again.max_sensitivity, rel=0.05)
+    assert sheet.as_found_worst_case is None
+    assert sheet.valve_cycle.existence == "persists" and not sheet.valve_cycle.retuning_cures

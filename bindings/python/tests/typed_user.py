@@ -4,7 +4,7 @@ import numpy as np
 import numpy.typing as npt
 
 import tauwright as tw
-from tauwright.plot import figure_of
+from tauwright.plot import figure_of, trend_figure
 from tauwright.request import request_from
 
 
@@ -22,6 +22,25 @@ def tuned(time_s: npt.NDArray[np.float64], output: list[float], value: npt.NDArr
     return sheet
 
 
+def assessed(G: tw.TransferFunction, settings: tw.PidSettings) -> float:
+    margins = tw.robustness(G, settings, scan_time=1.0)
+    ranges: list[tuple[float, float]] = margins.stable_dead_times
+    assert ranges == [] and tw.delay_budget(G, settings, scan_time=1.0).total > 2
+    margins.plot()
+    worst = tw.worst_case(G, settings, tw.Uncertainty.box(gain=0.1), progress=lambda done: done >= 0)
+    share = tw.violating_share(G, settings, tw.Uncertainty.of_models([G]), gain_margin=1.2)
+    duty = tw.Duty(2, scan_time=1.0, valve=tw.ValveSettings(stick=0.5), disturbance=[0.1, 0.2])
+    trend = tw.simulate(G, settings, duty, horizon=200)
+    trend_figure(trend, as_found=trend)
+    positions: npt.NDArray[np.float64] = trend.valve_position
+    h = tw.held(G, 1.0, between="linear")
+    values: npt.NDArray[np.complex128] = h.at_frequency(positions / 100)
+    one: complex = h(1.5)
+    assert abs(one) > 0 and values.size == len(trend) and share.share <= 1
+    period: float | None = tw.valve_cycle(G, settings, duty.valve).period
+    return (worst.max_sensitivity or 0.0) + (period or 0.0)
+
+
 def main() -> None:
     time_s = np.arange(0.0, 400.0, 2.0)
     output = [40.0 if t < 40 else 50.0 for t in time_s]
@@ -31,7 +50,7 @@ def main() -> None:
     sheet = tuned(time_s, output, value)
     if sheet.settings is not None and sheet.margins is not None and sheet.margins.gain_margin is not None:
         headroom: float = sheet.margins.gain_margin - 1.7
-        assert headroom > 0
+        assert headroom > 0 and assessed(G, sheet.settings) > 1
         block = tw.PidBlock(sheet.settings, scan_time=1.0, initial_output=40.0)
         block.mode = "manual"
         block.manual_output = 41.5

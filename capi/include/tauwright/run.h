@@ -10,9 +10,11 @@
 extern "C" {
 #endif
 
-/* A PID controller that runs once per scan, and a process that answers it. */
+/* A PID controller that runs once per scan, a process that answers it, and what stands between them. */
 typedef struct tauw_pid_block tauw_pid_block;
 typedef struct tauw_process_block tauw_process_block;
+typedef struct tauw_valve tauw_valve;
+typedef struct tauw_transmitter tauw_transmitter;
 
 enum tauw_mode { TAUW_MODE_MANUAL = 0, TAUW_MODE_AUTOMATIC = 1 };
 
@@ -36,6 +38,7 @@ typedef struct tauw_pid_coefficients {
     double derivative_smoothing;  /* default 1 */
     double measurement_smoothing; /* default 1 */
     double tracking_per_scan;     /* share of the excess over a limit that the integral gives up per scan */
+    double output_change_per_scan; /* farthest the output goes in one scan in automatic, >= 0; default infinity */
 } tauw_pid_coefficients;
 
 /* Coefficients of one scan of a process block, made by tauw_discretize_process:
@@ -51,9 +54,37 @@ typedef struct tauw_process_coefficients {
     int64_t delay_scans; /* whole scans of dead time, 0 to 10000000 */
 } tauw_process_coefficients;
 
+/* Coefficients of one scan of a valve, made by tauw_discretize_valve; percent of travel, 0 is a fault that is
+ * not there. In this order: the demand is limited to the travel; the play of the dead band is taken up; a
+ * valve at rest stays until the demand is farther away than `stick`, then goes to it, in whole multiples of
+ * `resolution` and no faster than `travel_per_scan`. */
+typedef struct tauw_valve_coefficients {
+    uint32_t struct_size;
+    uint32_t reserved;
+    double dead_band;       /* full width: what a reversal loses, >= 0 */
+    double stick;           /* >= 0 */
+    double resolution;      /* >= 0 */
+    double travel_per_scan; /* > 0; default infinity */
+    double position_low;    /* ends of the travel; default 0 */
+    double position_high;   /* default 100 */
+} tauw_valve_coefficients;
+
+/* Coefficients of one scan of a transmitter, made by tauw_discretize_transmitter; unit of the process value.
+ * The measured value is the process value behind a lag, with noise, rounded to a multiple of the resolution. */
+typedef struct tauw_transmitter_coefficients {
+    uint32_t struct_size;
+    uint32_t reserved;
+    double smoothing;  /* share of the change taken over per scan, above 0, at most 1; default 1 is no lag */
+    double noise;      /* standard deviation, >= 0 */
+    double resolution; /* >= 0 */
+    uint64_t seed;     /* of the noise; equal seeds give equal values; default 1 */
+} tauw_transmitter_coefficients;
+
 /* See tauw_error_defaults. Since 0.1. Any thread. Never allocate. */
 TAUW_API int32_t tauw_pid_coefficients_defaults(tauw_pid_coefficients* coefficients, uint32_t size);
 TAUW_API int32_t tauw_process_coefficients_defaults(tauw_process_coefficients* coefficients, uint32_t size);
+TAUW_API int32_t tauw_valve_coefficients_defaults(tauw_valve_coefficients* coefficients, uint32_t size);
+TAUW_API int32_t tauw_transmitter_coefficients_defaults(tauw_transmitter_coefficients* coefficients, uint32_t size);
 
 /* Bytes and alignment of a block's memory. malloc'd memory is aligned enough.
  * Since 0.1. Any thread. Never allocate. */
@@ -61,11 +92,16 @@ TAUW_API size_t tauw_pid_block_size(void);
 TAUW_API size_t tauw_pid_block_align(void);
 TAUW_API size_t tauw_process_block_size(void);
 TAUW_API size_t tauw_process_block_align(void);
+TAUW_API size_t tauw_valve_size(void);
+TAUW_API size_t tauw_valve_align(void);
+TAUW_API size_t tauw_transmitter_size(void);
+TAUW_API size_t tauw_transmitter_align(void);
 
 /* Sets up a block in memory[size], which stays the caller's; *block is its address as a typed pointer.
  * Limits are finite with output_low < output_high. With `initial_output` (else NULL) the first step
  * presets the integral so that it returns that value; without, the integral starts at output_low. The
- * block starts in automatic. Errors: NOT_FINITE, OUT_OF_DOMAIN (limits, alignment), BUFFER_TOO_SMALL.
+ * block starts in automatic. Errors: NOT_FINITE, OUT_OF_DOMAIN (limits, output change, alignment),
+ * BUFFER_TOO_SMALL.
  * Since 0.1. One thread at a time per block. Never allocates. */
 TAUW_API int32_t tauw_pid_block_init(void* memory, size_t size, const tauw_pid_coefficients* coefficients,
                                      double output_low, double output_high, const double* initial_output,
@@ -118,6 +154,29 @@ TAUW_API int32_t tauw_process_block_step(tauw_process_block* block, double outpu
  * Since 0.1. Concurrent calls on the same block are fine while none changes it. Real-time safe. */
 TAUW_API int32_t tauw_process_block_process_value(const tauw_process_block* block, double* process_value,
                                                   tauw_error* error);
+
+/* Sets up a valve at rest at initial_position (limited to the travel), in the middle of its dead band, or a
+ * transmitter at rest at initial_value, in memory[size], which stays the caller's. Errors: NOT_FINITE,
+ * OUT_OF_DOMAIN (coefficients, alignment), BUFFER_TOO_SMALL.
+ * Since 0.1. One thread at a time per block. Never allocate. */
+TAUW_API int32_t tauw_valve_init(void* memory, size_t size, const tauw_valve_coefficients* coefficients,
+                                 double initial_position, tauw_valve** valve, tauw_error* error);
+TAUW_API int32_t tauw_transmitter_init(void* memory, size_t size, const tauw_transmitter_coefficients* coefficients,
+                                       double initial_value, tauw_transmitter** transmitter, tauw_error* error);
+
+/* One scan of a valve; the position is held over it. A demand that is not finite is taken as the one before.
+ * Since 0.1. One thread at a time per block. Real-time safe. */
+TAUW_API int32_t tauw_valve_step(tauw_valve* valve, double demand, double* position, tauw_error* error);
+
+/* One scan of a transmitter. A process value that is not finite is handed on as it is and not remembered.
+ * Since 0.1. One thread at a time per block. Real-time safe. */
+TAUW_API int32_t tauw_transmitter_step(tauw_transmitter* transmitter, double process_value, double* measured,
+                                       tauw_error* error);
+
+/* The position now, and the measured value that the last step gave.
+ * Since 0.1. Concurrent calls on the same block are fine while none changes it. Real-time safe. */
+TAUW_API int32_t tauw_valve_position(const tauw_valve* valve, double* position, tauw_error* error);
+TAUW_API int32_t tauw_transmitter_measured(const tauw_transmitter* transmitter, double* measured, tauw_error* error);
 
 #ifdef __cplusplus
 }

@@ -2,7 +2,7 @@
 #ifndef TAUWRIGHT_SYNTHESIZE_H
 #define TAUWRIGHT_SYNTHESIZE_H
 
-#include <tauwright/control.h>
+#include <tauwright/assess.h>
 
 #ifdef __cplusplus
 extern "C" {
@@ -112,6 +112,13 @@ TAUW_API int32_t tauw_synthesis_controller_at(const tauw_synthesis* synthesis, c
 TAUW_API int32_t tauw_synthesis_attained_with_settings_at(const tauw_synthesis* synthesis, const double* s_real,
                                                           const double* s_imaginary, size_t n, double* value_real,
                                                           double* value_imaginary, tauw_error* error);
+
+/* Margins of a process with the exact controller, which holds its model's dead time, in place of the settings; `process`
+ * may differ from the one the controller was made for. extra_delay >= 0 s is added to the loop. Errors:
+ * MISSING_ARGUMENT where there is no controller, NOT_FINITE, OUT_OF_DOMAIN.
+ * Since 0.1. Concurrent calls on the same handles are fine. Allocates the handle; the caller destroys it. */
+TAUW_API int32_t tauw_margins_of_exact_controller(const tauw_model* process, const tauw_synthesis* synthesis,
+                                                  double extra_delay, tauw_margins** margins, tauw_error* error);
 
 /* Releases the synthesis and makes *synthesis NULL; NULL is fine. Returns TAUW_OK or
  * TAUW_ERROR_WRONG_HANDLE.

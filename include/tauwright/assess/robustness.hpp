@@ -62,7 +62,7 @@ struct Robustness {
     std::optional<double> gain_reduction_margin = {};  ///< largest factor below 1 that destabilizes; 0 for none
     std::optional<double> phase_margin_deg = {};       ///< smallest angle from -1 over all gain crossovers; infinite for none
     std::optional<double> delay_margin = {};         ///< smallest dead time that destabilizes; infinite for none
-    std::optional<double> max_sensitivity = {};        ///< Ms = max |1/(1 + L)|, at least 1
+    std::optional<double> max_sensitivity = {};        ///< Ms = max |1/(1 + L)|; at least 1 but for loops that keep gain at high frequency
     std::optional<double> max_sensitivity_frequency = {};                ///< rad/s; infinite where only a limit
     std::optional<double> max_complementary_sensitivity = {};            ///< Mt = max |L/(1 + L)|
     std::optional<double> max_complementary_sensitivity_frequency = {};  ///< rad/s; 0 where at rest

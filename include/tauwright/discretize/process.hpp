@@ -143,6 +143,10 @@ inline run::ProcessCoefficients discretize(const TransferFunction& process, doub
         c.direct = process.gain();
         return c;
     }
+    for (std::size_t i = 0; i < 2; ++i)
+        if (!is_finite(system.b[i]) || !is_finite(system.A[i][0]) || !is_finite(system.A[i][1]))
+            throw Error(error_code::out_of_domain,
+                        detail::joined({"process is ", process.text(), "; a lag is too short for numbers to hold 1/lag: leave it out"}));
     const detail::HeldStep full = detail::held_step(system, scan_time);
     const detail::HeldStep late = detail::held_step(system, scan_time - older);
     const detail::HeldStep early = detail::held_step(system, older);
