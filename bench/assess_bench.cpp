@@ -69,6 +69,26 @@ static void trend_of_600_scans(benchmark::State& state) {
 }
 BENCHMARK(trend_of_600_scans)->Unit(benchmark::kMicrosecond);
 
+// 10,000 first-order loops with their own parameters and dead times, 600 scans, both tables written.
+static void trends_of_many_loops(benchmark::State& state) {
+    std::vector<LoopToSimulate> loops;
+    for (int i = 0; i < 10000; ++i) {
+        const double gain = 0.5 + 0.025 * (i % 100), lag = 5.0 + 0.35 * (i / 100), dead_time = 0.2 * (i % 97) + 0.01 * (i % 89);
+        loops.push_back({first_order_plus_dead_time(gain, lag, dead_time), {.gain = lag / (2.0 * gain * (dead_time + 1.0)), .integral_time = lag}});
+    }
+    const Duty duty{.setpoint_step = 30.0, .load_step = 10.0, .load_time = 150.0, .scan_time = 0.5};
+    const std::size_t scans = scans_of(duty, 299.5);
+    std::vector<double> process_value(scans * loops.size()), output(process_value);
+    double best_s = 1e300;
+    for (auto _ : state) {
+        const auto began = std::chrono::steady_clock::now();
+        simulate_many(loops, duty, 299.5, process_value, output);
+        best_s = std::min(best_s, std::chrono::duration<double>(std::chrono::steady_clock::now() - began).count());
+    }
+    state.counters["ns_per_loop_and_scan"] = best_s * 1e9 / static_cast<double>(process_value.size());
+}
+BENCHMARK(trends_of_many_loops)->Unit(benchmark::kMillisecond);
+
 // Worst cases: a box of +-30 % around first order, five operating points, a lightly damped plant.
 static void worst_of_a_box(benchmark::State& state) {
     const TransferFunction process = first_order_plus_dead_time(2.0, 10.0, 3.0);

@@ -11,6 +11,10 @@ for floor in identify run assess synthesize tune; do
 done
 echo "== identify against scipy.optimize.curve_fit"
 PYTHONPATH=$build/python PYTHONDONTWRITEBYTECODE=1 /usr/bin/python3 "$source/bench/compare_with_scipy.py"
+echo "== margins against SciPy on a grid"
+PYTHONPATH=$build/python PYTHONDONTWRITEBYTECODE=1 /usr/bin/python3 "$source/bench/compare_margins.py"
+echo "== trends against Python, NumPy and SciPy"
+PYTHONPATH=$build/python PYTHONDONTWRITEBYTECODE=1 /usr/bin/python3 "$source/bench/compare_trends.py"
 echo "== compile time"
 "$source/bench/include_cost.sh" "$source"
 echo "== C library, stripped"

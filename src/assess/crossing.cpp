@@ -31,11 +31,13 @@ public:
     };
     Range slopes(const Piece& piece) const noexcept {
         const double middle = of_ == CrossingOf::phase ? piece.middle.slope.imag() : piece.middle.slope.real();
-        return widened(middle, piece.bounds.bend * piece.half_width(), -m_ / piece.low, -m_ / piece.high);
+        const double bend = of_ == CrossingOf::phase ? piece.bounds.phase_bend : piece.bounds.bend;
+        return widened(middle, bend * piece.half_width(), -m_ / piece.low, -m_ / piece.high);
     }
     Range bends(const Piece& piece) const noexcept {
         const double middle = of_ == CrossingOf::phase ? piece.middle.bend.imag() : piece.middle.bend.real();
-        return widened(middle, piece.bounds.twist * piece.half_width(), m_ / (piece.low * piece.low), m_ / (piece.high * piece.high));
+        const double twist = of_ == CrossingOf::phase ? piece.bounds.phase_twist : piece.bounds.twist;
+        return widened(middle, twist * piece.half_width(), m_ / (piece.low * piece.low), m_ / (piece.high * piece.high));
     }
 
     /// The one zero of a monotone piece with a change of sign.
@@ -93,7 +95,7 @@ bool excluded(const LoopCurve& curve, const Piece& piece, CrossingOf of) noexcep
         const double size = L.real() * L.real() + L.imag() * L.imag(), grows = growth(2.0 * change);
         return size > grows || size * grows < 1.0;
     }
-    const double change = piece.rest_change(piece.middle.slope.imag());
+    const double change = piece.phase_change(piece.middle.slope.imag());
     if (L.real() >= 0.0 && change < 1.5) return true;
     if (!(change < 3.2)) return false;
     // The sine of an angle is below it.
@@ -110,7 +112,7 @@ CrossingSearch crossings(const LoopCurve& curve, const Piece& piece, CrossingOf 
     const Level level(curve, of);
     if (of == CrossingOf::phase) {
         // The angle must not wrap on the piece.
-        const double change = piece.rest_change(piece.middle.slope.imag());
+        const double change = piece.phase_change(piece.middle.slope.imag());
         if (!(std::abs(level.of(piece.middle.L)) + change < 3.1)) return found;
     }
     // At both ends of the path L is real, and there 1 or -1 but for rounding is 1 or -1.

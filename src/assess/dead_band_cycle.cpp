@@ -210,7 +210,7 @@ DeadBandCycle dead_band_cycle(const TransferFunction& process, const TransferFun
     constexpr double ratio = 1.02;
     Meeting before = meeting_at(loop, low);
     double at = 0.0, size = 1.0;
-    // Of several meetings the one with the largest cycle: beyond it every disturbance dies out.
+    // Of several meetings the one with the largest cycle: the one that a large disturbance ends in.
     for (double w = low * ratio; w < high; w *= ratio) {
         const Meeting now = meeting_at(loop, w);
         cycle.closeness = std::max(cycle.closeness, now.ratio);

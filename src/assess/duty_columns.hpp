@@ -46,9 +46,11 @@ inline Trend known_columns(const Duty& duty, double h, std::size_t n) {
         for (std::size_t k = 0; k < n; ++k)
             trend.setpoint[k] = rest + duty.setpoint_step * progress(trend.time_s[k], 0.0, duty.setpoint_ramp_time);
     trend.load.resize(n);
-    if (duty.load_step != 0.0)
+    if (load_ramps(duty))
         for (std::size_t k = 0; k < n; ++k)
             trend.load[k] = duty.load_step * progress(trend.time_s[k], duty.load_time, duty.load_ramp_time);
+    else
+        for (auto k = n; k-- > 0 && progress(trend.time_s[k], duty.load_time, 0.0) == 1.0;) trend.load[k] = duty.load_step;
     for (std::size_t k = 0; k < std::min(n, duty.disturbance.size()); ++k) trend.load[k] += duty.disturbance[k];
     return trend;
 }

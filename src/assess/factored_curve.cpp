@@ -28,7 +28,7 @@ FactoredCurve::FactoredCurve(const TransferFunction& open_loop) : loop_(open_loo
     for (const auto& p : f.lead_pairs) low_phase_slope_ += 2.0 * p.damping * p.time_constant;
     for (const auto& p : f.lag_pairs) low_phase_slope_ -= 2.0 * p.damping * p.time_constant;
     unstable_poles_ = loop_.unstable_poles();
-    fastest_turn_ = loop_.dead_time();
+    fastest_turn_ = lasting_turn_ = loop_.dead_time();
     const int degree = loop_.relative_degree();
     at_infinity_ = degree > 0 ? 0.0 : degree < 0 ? infinity : std::abs(leading_);
     limit_ = degree == 0 && loop_.dead_time() == 0.0 ? leading_ : 0.0;
@@ -46,21 +46,32 @@ void FactoredCurve::take(const std::vector<std::complex<double>>& list, double s
         const double size = std::hypot(root.real(), root.imag());
         smallest_root_ = std::min(smallest_root_, size);
         largest_root_ = std::max(largest_root_, size);
+        sum_of_roots_ += size;
     }
 }
 
 void FactoredCurve::find_axis_roots() {
+    const auto on_axis = [&](double im, double sign) {
+        return std::find_if(roots_.begin(), roots_.end(), [&](const Root& r) { return r.re == 0.0 && r.im == im && r.sign == sign; });
+    };
+    // A pole and a zero at the same place leave L alone.
+    for (std::size_t i = 0; i < roots_.size();) {
+        const double im = roots_[i].im, sign = roots_[i].sign;
+        if (roots_[i].re == 0.0 && on_axis(im, -sign) != roots_.end()) {
+            hides_axis_mode_ = true;
+            roots_.erase(on_axis(im, -sign));
+            roots_.erase(on_axis(im, sign));
+            i = 0;
+        } else {
+            ++i;
+        }
+    }
     for (const Root& root : roots_) {
         if (root.re != 0.0 || root.im <= 0.0) continue;
-        const auto same = [&](const AxisRoot& a) { return a.w == root.im; };
-        const auto known = std::find_if(axis_roots_.begin(), axis_roots_.end(), same);
+        const auto known = std::find_if(axis_roots_.begin(), axis_roots_.end(), [&](const AxisRoot& a) { return a.w == root.im; });
         const int count = root.sign < 0.0 ? 1 : -1;
-        if (known == axis_roots_.end()) {
-            axis_roots_.push_back({root.im, count});
-        } else {
-            hides_axis_mode_ |= (known->poles > 0) != (count > 0);
-            known->poles += count;
-        }
+        if (known == axis_roots_.end()) axis_roots_.push_back({root.im, count});
+        else known->poles += count;
     }
     std::sort(axis_roots_.begin(), axis_roots_.end(), [](const AxisRoot& a, const AxisRoot& b) { return a.w < b.w; });
 }
@@ -108,6 +119,16 @@ CurveBounds FactoredCurve::bounds(double low, double high) const noexcept {
         b.bend += 1.0 / square;
     }
     b.twist = nearest < infinity ? 2.0 * b.bend / std::sqrt(nearest) : 0.0;
+    b.phase_bend = b.bend;
+    b.phase_twist = b.twist;
+    if (low > 2.0 * largest_root_) {
+        // Far out L is a power of jw times 1 - c/w each with c = root/j, and the power has no say in the phase:
+        // |1/(w - c)^2 - 1/w^2| <= 2 |c| / (w - |c|)^3, and the next derivative in kind.
+        const double inverse = 1.0 / low, left = 1.0 / (1.0 - largest_root_ * inverse);
+        const double share = sum_of_roots_ * inverse * inverse * inverse * left * left * left;
+        b.phase_bend = std::min(b.bend, 2.0 * share);
+        b.phase_twist = std::min(b.twist, 6.0 * share * inverse * left);
+    }
     return b;
 }
 

@@ -40,6 +40,7 @@ private:
     };
     std::vector<Ratio> ratios_;
     double leading_ = 0.0;  // R = leading * product (jw - zeros) / product (jw - poles) * exp(-jw dead time)
+    double sum_of_roots_ = 0.0;
     bool hides_axis_mode_ = false;
 };
 

@@ -33,14 +33,16 @@ void add_integrals(Figures& f, const View& view, double h) noexcept {
     std::size_t at_limit = 0;
     for (std::size_t k = 0; k < view.n; ++k) {
         const double error = view.error(k), size = std::abs(error);
-        f.integrated_absolute_error += size * h;
-        f.integrated_error += error * h;
-        f.integrated_squared_error += error * error * h;
-        f.integrated_time_absolute_error += std::max(view.trend.time_s[k] - from, 0.0) * size * h;
+        const double share = k == 0 || k + 1 == view.n ? 0.5 * h : h;  // trapezoids
+        f.integrated_absolute_error += size * share;
+        f.integrated_error += error * share;
+        f.integrated_squared_error += error * error * share;
+        f.integrated_time_absolute_error += std::max(view.trend.time_s[k] - from, 0.0) * size * share;
         f.valve_travel += std::abs(view.moved[k] - previous);
         previous = view.moved[k];
         const double output = view.trend.output[k];
-        at_limit += output <= view.trend.duty.output_low || output >= view.trend.duty.output_high;
+        // An output is held until the next scan.
+        at_limit += k + 1 < view.n && (output <= view.trend.duty.output_low || output >= view.trend.duty.output_high);
     }
     f.time_at_limits = static_cast<double>(at_limit) * h;
 }

@@ -2,7 +2,9 @@
 
 #include <algorithm>
 #include <cmath>
+#include <limits>
 
+#include "assess/duty_columns.hpp"
 #include "tauwright/discretize/process.hpp"
 
 namespace tauwright {
@@ -99,6 +101,32 @@ void put_at_rest(LoopLanes& lanes, std::size_t j, double rest, double measured, 
 
 }  // namespace
 
+SharedDuty shared_duty(const Duty& duty) noexcept {
+    constexpr double infinite = std::numeric_limits<double>::infinity();
+    return {.output_low = duty.output_low,
+            .output_high = duty.output_high,
+            .output_change_per_scan = duty.output_rate_limit ? *duty.output_rate_limit * duty.scan_time.value_or(infinite) : infinite,
+            .rest_output = duty.resting_output(),
+            .rest_process_value = duty.resting_process_value(),
+            .run_away = run_away};
+}
+
+DutySizes sizes_of(const Duty& duty, std::size_t scans) noexcept {
+    double disturbance = 0.0;
+    for (double x : duty.disturbance) disturbance = std::max(disturbance, std::abs(x));
+    return {.setpoint = std::abs(duty.resting_process_value()) + std::abs(duty.setpoint_step),
+            .load = std::abs(duty.load_step) + disturbance,
+            .noise = 6.0 * duty.noise,  // the most that run::Noise makes
+            .scans = static_cast<double>(scans)};
+}
+
+bool is_plain_first_order(const run::PidCoefficients& pid, const run::ProcessCoefficients& process, double integral,
+                          const SharedDuty& duty, const DutySizes& sizes) noexcept {
+    const double farthest = std::abs(duty.rest_process_value) + duty.run_away;
+    return has_one_state(process) && cannot_run_away(process, duty, sizes) && cannot_overflow(pid, duty, sizes, integral, farthest) &&
+           duty.output_change_per_scan == std::numeric_limits<double>::infinity();
+}
+
 run::ProcessCoefficients lane_coefficients(const TransferFunction& process, double scan_time) {
     if (process.order() != 1) return discretize(process, scan_time);
     const double scans = process.dead_time() / scan_time;
@@ -139,7 +167,6 @@ LaneKind set_lane(LoopLanes& lanes, std::size_t j, const TransferFunction& proce
     run::PidBlock controller(pid, duty.output_low, duty.output_high, duty.rest_output);
     controller.step(rest, rest);  // at rest before time 0, as `simulate` does
 
-    const bool settled = has_one_state(c) && cannot_run_away(c, duty, sizes);
     const double farthest = std::abs(rest) + duty.run_away;
     const bool good_start = (controller.flags() & run::flag_bad_input) == 0;
     if (!good_start || c.delay_scans > longest_delay_of_lanes ||
@@ -151,8 +178,7 @@ LaneKind set_lane(LoopLanes& lanes, std::size_t j, const TransferFunction& proce
     put(lanes, j, c);
     const double measured = rest < 1e-200 && rest > -1e-200 ? 0.0 : rest;
     put_at_rest(lanes, j, rest, measured, controller.integral(), controller.output());
-    const bool rate_limit = duty.output_change_per_scan < std::numeric_limits<double>::infinity();
-    if (!settled || rate_limit) return LaneKind::any;
+    if (!is_plain_first_order(pid, c, controller.integral(), duty, sizes)) return LaneKind::any;
     return pid.derivative_per_scan == 0.0 ? LaneKind::first_order_pi : LaneKind::first_order_pid;
 }
 

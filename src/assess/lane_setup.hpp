@@ -2,8 +2,10 @@
 #pragma once
 
 #include "assess/loop_lanes.hpp"
+#include "tauwright/assess/simulate.hpp"
 #include "tauwright/control/pid_settings.hpp"
 #include "tauwright/model/transfer_function.hpp"
+#include "tauwright/run/pid_block.hpp"
 #include "tauwright/run/process_block.hpp"
 
 namespace tauwright {
@@ -17,6 +19,17 @@ enum class LaneKind { first_order_pi, first_order_pid, any, alone };
 struct DutySizes {
     double setpoint = 0.0, load = 0.0, noise = 0.0, scans = 0.0;
 };
+
+/// What the loops of a duty with a scan time share, but for its arrays.
+SharedDuty shared_duty(const Duty& duty) noexcept;
+
+/// Sizes that the arrays of a duty never exceed.
+DutySizes sizes_of(const Duty& duty, std::size_t scans) noexcept;
+
+/// True for one state without a rate limit, where it is proved from the integral at rest that no value ever comes near
+/// to where a trend ends or a controller holds.
+bool is_plain_first_order(const run::PidCoefficients& pid, const run::ProcessCoefficients& process, double integral,
+                          const SharedDuty& duty, const DutySizes& sizes) noexcept;
 
 /// `discretize(process, scan_time)`, bit for bit, by its one state where it has one: ten times as fast.
 run::ProcessCoefficients lane_coefficients(const TransferFunction& process, double scan_time);

@@ -21,6 +21,7 @@ struct CurvePoint {
 struct CurveBounds {
     double bend = 0.0;   ///< on |d^2 log R / dw^2|
     double twist = 0.0;  ///< on |d^3 log R / dw^3|
+    double phase_bend = 0.0, phase_twist = 0.0;  ///< the same of arg R alone, which may be far smaller
 };
 
 /// A pole or zero of the open loop on the path itself.
@@ -45,6 +46,11 @@ public:
     /// Bound on |log(L / limit())| from w on, where there is a limit.
     virtual double left_to_limit(double) const noexcept { return std::numeric_limits<double>::infinity(); }
 
+    /// By proof no phase crossing lies beyond w; the walk need not go on for one.
+    virtual bool phase_settled(double) const noexcept { return false; }
+    /// The walk looks for phase crossings down to this |L|.
+    virtual double smallest_of_interest() const noexcept { return 1e-12; }
+
     /// Where the path ends: infinite, or half the sampling frequency.
     double end() const noexcept { return end_; }
     /// Poles at 0 less zeros at 0.
@@ -65,6 +71,8 @@ public:
     bool has_dead_time() const noexcept { return fastest_turn_ > 0.0; }
     /// Dead time that turns the curve at high frequency, s.
     double fastest_turn() const noexcept { return fastest_turn_; }
+    /// The part of it that every piece feels, however small the rest of L is.
+    double lasting_turn() const noexcept { return lasting_turn_; }
     double smallest_root() const noexcept { return smallest_root_; }
     double largest_root() const noexcept { return largest_root_; }
     /// Gain and integrators alone: the phase is the same everywhere.
@@ -78,7 +86,7 @@ protected:
     int unstable_poles_ = 0;
     double at_infinity_ = 0.0, limit_ = 0.0;
     double nearest_at_infinity_ = 1.0, inverse_nearest_at_infinity_ = std::numeric_limits<double>::infinity();
-    double fastest_turn_ = 0.0;
+    double fastest_turn_ = 0.0, lasting_turn_ = 0.0;
     double smallest_root_ = std::numeric_limits<double>::infinity(), largest_root_ = 0.0;
     bool constant_phase_ = false;
     std::vector<AxisRoot> axis_roots_;  ///< ascending, at w > 0

@@ -55,7 +55,7 @@ template <bool derivative, bool rate_limit>
 template <bool one_state>
 [[gnu::always_inline]] inline void answer(LoopLanes& b, const SharedDuty& duty, const LaneRow* __restrict input,
                                           LaneRow& __restrict process_value) noexcept {
-    const double rest = duty.rest_process_value, run_away = duty.run_away;
+    const double rest = duty.rest_process_value + 0.0, run_away = duty.run_away;  // a rest of -0 is left for 0
     for (std::size_t j = 0; j < L; ++j) {
         const double u0 = input[0][j], u1 = input[-1][j], x0 = b.state0[j];
         if constexpr (one_state) {
@@ -94,6 +94,8 @@ template <bool derivative, bool one_state, bool rate_limit>
         }
         value += run.stride;
         answer<one_state>(b, run.duty, row, *value);
+        run.rows_1->some();
+        run.rows_2->some();
     }
     b.process_value = *value;
 }

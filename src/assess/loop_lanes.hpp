@@ -4,6 +4,8 @@
 
 #include <cstddef>
 
+#include "assess/row_copy.hpp"
+
 namespace tauwright {
 inline namespace v0 {
 namespace detail {
@@ -32,10 +34,10 @@ struct LoopLanes {
 
 /// What all loops share. The arrays have a value a scan.
 struct SharedDuty {
-    const double* setpoint;  ///< flushed, as PidBlock does
-    const double* load;
-    const double* noise;
-    double output_low, output_high, output_change_per_scan, rest_output, rest_process_value, run_away;
+    const double* setpoint = nullptr;  ///< flushed, as PidBlock does
+    const double* load = nullptr;
+    const double* noise = nullptr;
+    double output_low = 0.0, output_high = 0.0, output_change_per_scan = 0.0, rest_output = 0.0, rest_process_value = 0.0, run_away = 0.0;
 };
 
 /// Scans `first` to `first + count` of a block.
@@ -46,6 +48,7 @@ struct LaneRun {
     LaneRow* line;                    ///< row t: the inputs that act in scan first + t; from -1 to count + longest delay
     LaneRow *process_value, *output;  ///< results, every `stride`th row; of the process value also that after the last scan
     std::size_t stride;
+    RowsUnderWay *rows_1, *rows_2;    ///< written on with every scan
 };
 
 /// One state, no derivative; one state; two states or a direct gain, a rate limit, watched for running away.

@@ -8,7 +8,7 @@ namespace detail {
 
 namespace {
 
-constexpr double slack = 1e-8;  // of |1 + X|^2, as at any piece
+constexpr double slack = 1e-8;  // of |1 + X|^2: where |T| is 1 at rest it stays so but for less than this
 
 // The phase of L at 0 is this many quarter turns from the positive real axis.
 int quarter_turns(const LoopCurve& curve) noexcept {
@@ -60,7 +60,7 @@ double low_end(const LoopCurve& curve, double least_small) noexcept {
     if (curve.fastest_turn() > 0.0) w = std::min(w, 0.5 / curve.fastest_turn());
     if (is_finite(curve.end())) w = std::min(w, 0.5 * curve.end());
     if (!(w > 0.0)) return 0.0;
-    for (int i = 0; i < 16; ++i, w *= 0.4)
+    for (int i = 0; i < 48; ++i, w *= 0.4)
         if (holds(curve, w, least_small)) return w;
     return 0.0;
 }

@@ -4,6 +4,7 @@
 #include <cmath>
 #include <numbers>
 
+#include "assess/nearness.hpp"
 #include "assess/pole_counts.hpp"
 #include "assess/sweep.hpp"
 
@@ -28,7 +29,17 @@ Derivatives derivatives(double size, double slope, const CurveBounds& b) noexcep
 // Of log f where f has these derivatives and is at least `size`.
 CurveBounds logarithm(const Derivatives& d, double size) noexcept {
     const double first = d.first / size, second = d.second / size;
-    return {second + first * first, d.third / size + 3.0 * first * second + 2.0 * first * first * first};
+    const double bend = second + first * first, twist = d.third / size + 3.0 * first * second + 2.0 * first * first * first;
+    return {bend, twist, bend, twist};
+}
+
+// Whether the dead times are as small whole numbers, whose worst turns need not meet.
+bool simple_ratio(double one, double other) noexcept {
+    for (int n = 1; n <= 20; ++n) {
+        const double x = n * one / other;
+        if (std::abs(x - std::round(x)) < 1e-6 * x) return true;
+    }
+    return false;
 }
 
 // T = 1 - E sampled on the axis with the derivatives of log T.
@@ -58,8 +69,9 @@ MismatchCurve::MismatchCurve(const TransferFunction& process, const InternalMode
     smallest_root_ = std::min(forward_.smallest_root(), response_.smallest_root());
     largest_root_ = std::max(forward_.largest_root(), response_.largest_root());
     fastest_turn_ = forward_.fastest_turn() + response_.fastest_turn();
+    lasting_turn_ = response_.at_infinity() > 0.0 ? fastest_turn_ : forward_.fastest_turn();
     axis_roots_ = forward_.axis_roots();
-    find_limits(process);
+    find_limits();
     controller_poles_ = count_controller_poles();
     // A right-half-plane zero of Q that 1 - T shares is no pole of the controller.
     int shared = 0;
@@ -68,12 +80,11 @@ MismatchCurve::MismatchCurve(const TransferFunction& process, const InternalMode
     unstable_poles_ = controller_poles_.value_or(0) - shared + forward_.unstable_poles();
 }
 
-void MismatchCurve::find_limits(const TransferFunction& process) {
+void MismatchCurve::find_limits() {
     const double a = response_.at_infinity(), b = forward_.at_infinity();
     at_infinity_ = a < 1.0 ? b / (1.0 - a) : infinity;
     const double ks = controller_.response().leading_coefficient(), kb = forward_.loop().leading_coefficient();
     const bool same_delay = forward_.loop().dead_time() == controller_.response().dead_time();
-    static_cast<void>(process);
     if (a == 0.0 && b == 0.0) return;
     const double as = a > 0.0 ? ks : 0.0, bs = b > 0.0 ? kb : 0.0;
     if (!has_dead_time()) {
@@ -84,6 +95,7 @@ void MismatchCurve::find_limits(const TransferFunction& process) {
     }
     // 1 - T + B and 1 - T, with their turning terms at their worst.
     neutral_ = a >= 1.0 || (same_delay ? std::abs(as - bs) : a + b) >= 1.0;
+    commensurate_ = !same_delay && simple_ratio(forward_.loop().dead_time(), controller_.response().dead_time());
     if (neutral_) return;
     if (same_delay) {
         nearest_at_infinity_ = std::min(std::abs((1.0 - as + bs) / (1.0 - as)), std::abs((1.0 + as - bs) / (1.0 + as)));
@@ -110,7 +122,7 @@ CurveBounds MismatchCurve::bounds(double low, double high) const noexcept {
     const CurveBounds b = forward_.bounds(low, high);
     if (low <= 0.0) {
         const CurveBounds rest = bounds_from_rest(high);
-        return {b.bend + rest.bend, b.twist + rest.twist};
+        return {b.bend + rest.bend, b.twist + rest.twist, b.phase_bend + rest.bend, b.phase_twist + rest.twist};
     }
     const double middle = 0.5 * (low + high), h = 0.5 * (high - low);
     const CurveBounds t = response_.bounds(low, high);
@@ -118,10 +130,10 @@ CurveBounds MismatchCurve::bounds(double low, double high) const noexcept {
     const double change = std::abs(p.slope.real()) * h + 0.5 * t.bend * h * h;
     const Derivatives T = derivatives(std::abs(p.T) * std::exp(std::min(change, 300.0)), std::abs(p.slope) + t.bend * h, t);
     const double least = std::abs(controller_.one_minus_response({0.0, middle})) - T.first * h;
-    if (!(least > 0.0)) return {infinity, infinity};
+    if (!(least > 0.0)) return {infinity, infinity, infinity, infinity};
     const CurveBounds E = logarithm(T, least);
     const double m = order_at_rest_;
-    return {b.bend + E.bend + m / (low * low), b.twist + E.twist + 2.0 * m / (low * low * low)};
+    return {b.bend + E.bend + m / (low * low), b.twist + E.twist + 2.0 * m / (low * low * low), b.phase_bend + E.bend, b.phase_twist + E.twist};
 }
 
 // Near 0 from the power series: 1 - T = s^m (n0 + n1 s + ...) / D(s).
@@ -140,15 +152,33 @@ CurveBounds MismatchCurve::bounds_from_rest(double high) const noexcept {
         N.third += c * power[3];
     }
     const double least = std::abs(series[static_cast<std::size_t>(order_at_rest_)]) - others;
-    if (!(least > 0.0)) return {infinity, infinity};
+    if (!(least > 0.0)) return {infinity, infinity, infinity, infinity};
     const CurveBounds numerator = logarithm(N, least);
     const CurveBounds t = response_.bounds(0.0, high);
-    return {numerator.bend + t.bend, numerator.twist + t.twist};
+    const double bend = numerator.bend + t.bend, twist = numerator.twist + t.twist;
+    return {bend, twist, bend, twist};
 }
 
 double MismatchCurve::tail(double w) const noexcept {
     const double t = response_.tail(w);
     return t < 1.0 ? forward_.tail(w) / (1.0 - t) : infinity;
+}
+
+double MismatchCurve::left_to_limit(double w) const noexcept {
+    if (has_dead_time()) return infinity;
+    const double k = response_.limit(), left = k != 0.0 ? response_.left_to_limit(w) : 0.0;
+    if (!(left < 0.5)) return infinity;
+    const double away = (k != 0.0 ? std::abs(k) * (growth(left) - 1.0) : response_.tail(w)) / std::abs(1.0 - k);
+    return away < 0.5 ? forward_.left_to_limit(w) + away / (1.0 - away) : infinity;
+}
+
+// Without dead time of its own the process settles toward a phase, and 1 - T toward 1.
+bool MismatchCurve::phase_settled(double w) const noexcept {
+    const double t = response_.tail(w);
+    if (forward_.fastest_turn() > 0.0 || !(t < 0.5) || !(w > 2.0 * largest_root_)) return false;
+    const double left = forward_.left_to_limit(w) + 4.0 * t;  // arcsin(t) here and there
+    const std::complex<double> L = value(w);
+    return std::abs(std::atan2(-L.imag(), -L.real())) > left;
 }
 
 namespace {
@@ -211,6 +241,7 @@ std::optional<int> MismatchCurve::count_controller_poles() const {
     // And from the crossings as a gain on T rises from 0 to 1, the last of them at 0 itself.
     const FactoredCurve negative(response_.loop().with_gain(-response_.loop().gain()));
     const SweepResult found = sweep(negative, nullptr);
+    if (!found.complete || found.capped) return std::nullopt;
     const int count = static_cast<int>(std::round(exact));
     int other = response_.unstable_poles();
     for (const Crossing& c : found.phase_crossings) {

@@ -18,16 +18,24 @@ struct Closest {
 };
 
 /// A piece of the path with its midpoint looked at.
-struct Piece {
+class Piece {
+public:
+    Piece(double low_end, double high_end, const CurvePoint& looked_at, const CurveBounds& bound) noexcept
+        : low(low_end), high(high_end), middle(looked_at), bounds(bound) {}
+
     double low = 0.0, high = 0.0;
     CurvePoint middle;
     CurveBounds bounds;
 
     double half_width() const noexcept { return 0.5 * (high - low); }
-    /// Bound on the change of log|R| or arg R from the middle to any point.
-    double rest_change(double slope) const noexcept {
+    /// Bound on the change of log|R|, and of arg R, from the middle to any point.
+    double rest_change(double slope) const noexcept { return change(slope, bounds.bend); }
+    double phase_change(double slope) const noexcept { return change(slope, bounds.phase_bend); }
+
+private:
+    double change(double slope, double bend) const noexcept {
         const double h = half_width();
-        return std::abs(slope) * h + 0.5 * bounds.bend * h * h;
+        return std::abs(slope) * h + 0.5 * bend * h * h;
     }
 };
 
@@ -87,7 +95,6 @@ inline double third_derivative(const QuantityBounds& b, double distance, double 
 inline double least(const SquaredDistance& s, double third, double h) noexcept {
     double low = s.q0 - std::abs(s.q1) * h + 0.5 * s.q2 * h * h;
     if (s.q2 > 0.0 && std::abs(s.q1) < s.q2 * h) low = s.q0 - 0.5 * s.q1 * s.q1 / s.q2;
-    else if (s.q2 < 0.0) low = s.q0 - std::abs(s.q1) * h + 0.5 * s.q2 * h * h;
     return low - third * h * h * h / 6.0;
 }
 

@@ -11,6 +11,7 @@
 #include "assess/mismatch_curve.hpp"
 #include "assess/pole_counts.hpp"
 #include "assess/sampled_curve.hpp"
+#include "assess/sampled_delay_margin.hpp"
 
 namespace tauwright {
 inline namespace v0 {
@@ -88,9 +89,8 @@ void take_delay_ranges(const LoopCurve& curve, const SweepResult& found, double 
     if (!r.unstable_poles || std::abs(curve.limit()) >= 1.0) return;
     r.stable_dead_times = stable_dead_times(curve, found, dead_time, *r.unstable_poles);
     if (r.verdict != Verdict::stable) return;
-    r.delay_reduction_margin = infinity;
     for (const DelayRange& range : r.stable_dead_times)
-        if (range.low <= dead_time && dead_time <= range.high && range.low > 0.0) r.delay_reduction_margin = dead_time - range.low;
+        if (range.low <= dead_time && dead_time <= range.high) r.delay_reduction_margin = range.low > 0.0 ? dead_time - range.low : infinity;
 }
 
 // s -> 1/s: its low end is the high end of a loop without dead time.
@@ -128,8 +128,8 @@ Robustness analyzed(const TransferFunction& open_loop, double varied_dead_time) 
     }
     const SweepResult found = swept(curve);
     collect_crossovers(curve, found, r);
-    if (curve.hides_axis_mode()) judge(r, Verdict::marginal);
-    else judge(r, found, poles_by_winding(curve, found), poles_followed(curve.loop(), curve, found));
+    judge(r, found, poles_by_winding(curve, found), poles_followed(curve.loop(), curve, found));
+    if (curve.hides_axis_mode() && r.verdict == Verdict::stable) judge(r, Verdict::marginal);
     if (r.verdict == Verdict::stable) take_margins(curve, found, r);
     take_delay_ranges(curve, found, varied_dead_time, r);
     return r;
@@ -137,6 +137,14 @@ Robustness analyzed(const TransferFunction& open_loop, double varied_dead_time) 
 
 // A zero at rest against an integrator hides a pole at 0: one of the two signals ramps away.
 bool hides_integrator(const TransferFunction& loop) { return loop.integrators() > 0 && loop.zeros_at_origin() > 0; }
+
+// What is left of a verdict where a mode on the axis is hidden.
+Robustness hiding(bool hidden, Robustness r) {
+    if (!hidden || r.verdict != Verdict::stable) return r;
+    Robustness marginal;
+    judge(marginal, Verdict::marginal);
+    return marginal;
+}
 
 }  // namespace
 
@@ -148,20 +156,23 @@ Robustness robustness(const TransferFunction& process, const PidSettings& settin
     require_not_negative("extra_delay", options.extra_delay);
     if (options.scan_time) require_positive("scan_time", *options.scan_time);
     const TransferFunction loop = process * transfer_function(settings);
-    if (hides_integrator(loop)) {
-        Robustness hidden;
-        judge(hidden, Verdict::marginal);
-        return hidden;
-    }
+    const bool hidden = hides_integrator(loop);
     if (!options.scan_time)
-        return analyzed(options.extra_delay > 0.0 ? loop.with_dead_time(loop.dead_time() + options.extra_delay) : loop, process.dead_time());
-    const SampledCurve curve(process.with_dead_time(process.dead_time() + options.extra_delay), settings, *options.scan_time);
+        return hiding(hidden, analyzed(options.extra_delay > 0.0 ? loop.with_dead_time(loop.dead_time() + options.extra_delay) : loop, process.dead_time()));
+    const TransferFunction delayed = process.with_dead_time(process.dead_time() + options.extra_delay);
+    const SampledCurve curve(delayed, settings, *options.scan_time);
     Robustness r;
     SweepResult found = sweep(curve, nullptr);
     found.complete &= curve.roots_are_known();
     collect_crossovers(curve, found, r);
     judge(r, found, poles_by_winding(curve, found), poles_by_gain(curve, found));
-    if (r.verdict == Verdict::stable) take_margins(curve, found, r);
+    if (r.verdict != Verdict::stable || hidden) return hiding(hidden, std::move(r));
+    take_margins(curve, found, r);
+    for (const GainCrossover& c : r.gain_crossovers)
+        if (c.delay_margin == r.delay_margin) {
+            r.delay_margin = sampled_delay_margin(delayed, settings, *options.scan_time, c.delay_margin, c.frequency_rad_s);
+            break;
+        }
     return r;
 }
 
@@ -178,7 +189,7 @@ Robustness robustness(const TransferFunction& process, const InternalModelContro
         return r;
     }
     if (curve.neutral()) {
-        judge(r, Verdict::unstable);
+        if (!curve.commensurate()) judge(r, Verdict::unstable);
         return r;
     }
     if (curve.has_dead_time() && curve.at_infinity() >= 1.0) {

@@ -87,7 +87,7 @@ SampledCurve::SampledCurve(const TransferFunction& process, const PidSettings& s
     // A zero at z = -1, where the path ends: stop just before.
     const bool zero_at_end = std::any_of(roots_.begin(), roots_.end(), [](const Root& r) { return r.sign > 0.0 && std::hypot(r.re + 2.0, r.im) < 1e-9; });
     end_ = zero_at_end ? pi / h_ * (1.0 - 1e-7) : pi / h_;
-    fastest_turn_ = (delay_ + 1.0) * h_;
+    fastest_turn_ = lasting_turn_ = (delay_ + 1.0) * h_;
     finish_limits();
     pair_for_tail();
 }
@@ -183,7 +183,7 @@ double SampledCurve::squared_distance_from(const Root& root, double from, double
 CurveBounds SampledCurve::bounds(double low, double high) const noexcept {
     const double m = std::abs(net_integrators_);
     // 1/x - cot x has slope up to 1 - 4/pi^2 and bend up to 16/pi^3 on (0, pi/2].
-    CurveBounds b{0.25 * m * 0.6, 0.125 * m * 0.52};
+    CurveBounds b{0.25 * m * 0.6, 0.125 * m * 0.52, 0.0, 0.0};
     const double from = low * h_, to = high * h_;
     for (const Root& root : roots_) {
         const double square = squared_distance_from(root, from, to);
@@ -191,7 +191,8 @@ CurveBounds SampledCurve::bounds(double low, double high) const noexcept {
         b.bend += bend;
         b.twist += bend * (1.0 + root.size) / std::sqrt(square);
     }
-    return {h_ * h_ * b.bend, h_ * h_ * h_ * b.twist};
+    const double bend = h_ * h_ * b.bend, twist = h_ * h_ * h_ * b.twist;
+    return {bend, twist, bend, twist};
 }
 
 void SampledCurve::pair_for_tail() {

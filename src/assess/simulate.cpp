@@ -5,6 +5,8 @@
 
 #include "assess/driven_process.hpp"
 #include "assess/duty_columns.hpp"
+#include "assess/first_order_loop.hpp"
+#include "assess/lane_setup.hpp"
 #include "tauwright/run/pid_block.hpp"
 
 namespace tauwright {
@@ -113,7 +115,13 @@ void run_scans(Trend& trend, run::PidBlock controller, Measure measure, Move mov
 // Nothing but controller and process of a named form: the common case, free of everything else.
 void run_plain(Trend& trend, const run::PidBlock& controller, const TransferFunction& process, double h) {
     const Duty& duty = trend.duty;
-    run::ProcessBlock block(discretize(process, h), duty.resting_output(), duty.resting_process_value());
+    const run::ProcessCoefficients coefficients = detail::lane_coefficients(process, h);
+    if (detail::run_first_order_loop(trend, controller, coefficients)) {
+        trend.measured = trend.process_value;
+        trend.valve_position = trend.output;
+        return;
+    }
+    run::ProcessBlock block(coefficients, duty.resting_output(), duty.resting_process_value());
     std::vector<double> line(run::delay_line_length(block.coefficients()));
     block.start(line.data(), line.size());
     const auto same = [](double x) { return x; };

@@ -2,12 +2,10 @@
 
 #include <algorithm>
 #include <cstring>
-#include <limits>
 
 #include "assess/driven_process.hpp"
 #include "assess/duty_columns.hpp"
 #include "assess/lane_setup.hpp"
-#include "assess/row_copy.hpp"
 
 namespace tauwright {
 inline namespace v0 {
@@ -30,12 +28,6 @@ struct Prepared {
     detail::DutySizes sizes = {};
 };
 
-double largest(const std::vector<double>& values) noexcept {
-    double most = 0.0;
-    for (double x : values) most = std::max(most, std::abs(x));
-    return most;
-}
-
 Prepared prepare(const Duty& duty, std::size_t scans) {
     const double h = *duty.scan_time;
     Prepared p{.columns = detail::known_columns(duty, h, scans), .noise = std::vector<double>(scans)};
@@ -44,17 +36,11 @@ Prepared prepare(const Duty& duty, std::size_t scans) {
         run::Noise noise(duty.seed);
         for (double& x : p.noise) x = duty.noise * noise.next();
     }
-    p.shared = {.setpoint = p.columns.setpoint.data(),
-                .load = p.columns.load.data(),
-                .noise = p.noise.data(),
-                .output_low = duty.output_low,
-                .output_high = duty.output_high,
-                .output_change_per_scan = duty.output_rate_limit ? *duty.output_rate_limit * h : std::numeric_limits<double>::infinity(),
-                .rest_output = duty.resting_output(),
-                .rest_process_value = duty.resting_process_value(),
-                .run_away = detail::run_away};
-    p.sizes = {.setpoint = largest(p.columns.setpoint), .load = largest(p.columns.load), .noise = largest(p.noise),
-               .scans = static_cast<double>(scans)};
+    p.shared = detail::shared_duty(duty);
+    p.shared.setpoint = p.columns.setpoint.data();
+    p.shared.load = p.columns.load.data();
+    p.shared.noise = p.noise.data();
+    p.sizes = detail::sizes_of(duty, scans);
     return p;
 }
 
@@ -62,9 +48,26 @@ Prepared prepare(const Duty& duty, std::size_t scans) {
 struct Table {
     std::size_t scans, loops;
     double *process_value, *output;
+};
 
-    // Larger than caches are.
-    bool large() const noexcept { return scans * loops > 1000000; }
+// The results of a tile, on their way to the table while the next tile is worked out.
+struct Tile {
+    LaneRow *process_value, *output;
+    detail::RowsUnderWay process_values_under_way, outputs_under_way;
+
+    static constexpr std::size_t value_rows = (scans_of_tile + 1) * blocks_of_group, output_rows = scans_of_tile * blocks_of_group;
+
+    explicit Tile(LaneRow* rows) noexcept : process_value(rows), output(rows + value_rows) {}
+
+    void send(const Table& table, std::size_t first_scan, std::size_t count, std::size_t first_loop, std::size_t width) noexcept {
+        const std::size_t to = first_scan * table.loops + first_loop;
+        process_values_under_way = {process_value->lane, loops_of_group, table.process_value + to, table.loops, width, count};
+        outputs_under_way = {output->lane, loops_of_group, table.output + to, table.loops, width, count};
+    }
+    void arrive() noexcept {
+        process_values_under_way.rest();
+        outputs_under_way.rest();
+    }
 };
 
 struct Block {
@@ -86,12 +89,13 @@ struct Block {
         std::fill_n(line, 1 + longest_delay, LaneRow{});
     }
 
-    void run(const detail::SharedDuty& duty, std::size_t first, std::size_t count, LaneRow* process_value, LaneRow* output) noexcept {
+    void run(const detail::SharedDuty& duty, std::size_t first, std::size_t count, Tile& tile, std::size_t place, Tile& before) noexcept {
         if (first_row + count + longest_delay > line_rows) {
             std::memmove(line, line + first_row - 1, (1 + longest_delay) * sizeof(LaneRow));
             first_row = 1;
         }
-        const detail::LaneRun lane_run{duty, first, count, one_delay, line + first_row, process_value, output, blocks_of_group};
+        const detail::LaneRun lane_run{duty, first, count, one_delay, line + first_row, tile.process_value + place, tile.output + place,
+                                       blocks_of_group, &before.process_values_under_way, &before.outputs_under_way};
         if (kind == LaneKind::first_order_pi) run_first_order_pi(lanes, lane_run);
         else if (kind == LaneKind::first_order_pid) run_first_order_pid(lanes, lane_run);
         else run_any_lanes(lanes, lane_run);
@@ -143,30 +147,26 @@ void fill(Block& block, std::span<const LoopToSimulate> loops, std::size_t first
     }
 }
 
-// A group of blocks through all scans, tile by tile; each tile's rows then go to the caller's in one stretch.
+// A group of blocks through all scans, tile by tile; each tile's rows go to the caller's in one stretch.
 void run_group(std::span<Block> blocks, const Prepared& p, std::size_t first_loop, const Table& table, std::vector<LaneRow>& memory) {
-    constexpr std::size_t value_rows = (scans_of_tile + 1) * blocks_of_group, output_rows = scans_of_tile * blocks_of_group;
-    std::size_t rows = value_rows + output_rows;
+    constexpr std::size_t tile_rows = Tile::value_rows + Tile::output_rows;
+    std::size_t rows = 2 * tile_rows;
     for (const Block& b : blocks) rows += b.rows_needed();
     if (memory.size() < rows) memory.resize(rows);
-    LaneRow* const process_value = memory.data();
-    LaneRow* const output = process_value + value_rows;
-    LaneRow* line = output + output_rows;
+    Tile tiles[2] = {Tile(memory.data()), Tile(memory.data() + tile_rows)};
+    LaneRow* line = memory.data() + 2 * tile_rows;
     for (Block& b : blocks) {
         b.start_line(line);
         line += b.line_rows;
     }
     const std::size_t width = std::min(blocks.size() * lanes_of_block, table.loops - first_loop);
-    const auto copy = table.large() ? detail::copy_past_caches : detail::copy_row;
-    for (std::size_t first = 0; first < table.scans; first += scans_of_tile) {
+    for (std::size_t first = 0, now = 0; first < table.scans; first += scans_of_tile, now = 1 - now) {
         const std::size_t count = std::min(scans_of_tile, table.scans - first);
-        for (std::size_t i = 0; i < blocks.size(); ++i) blocks[i].run(p.shared, first, count, process_value + i, output + i);
-        for (std::size_t t = 0; t < count; ++t) {
-            const std::size_t to = (first + t) * table.loops + first_loop;
-            copy(table.process_value + to, process_value[t * blocks_of_group].lane, width);
-            copy(table.output + to, output[t * blocks_of_group].lane, width);
-        }
+        for (std::size_t i = 0; i < blocks.size(); ++i) blocks[i].run(p.shared, first, count, tiles[now], i, tiles[1 - now]);
+        tiles[1 - now].arrive();
+        tiles[now].send(table, first, count, first_loop, width);
     }
+    for (Tile& tile : tiles) tile.arrive();
 }
 
 void run_alone(const LoopToSimulate& loop, const Duty& duty, double horizon_s, std::size_t i, const Table& table) {

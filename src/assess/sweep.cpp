@@ -66,13 +66,14 @@ private:
         return is_finite(step) ? step : 1.0;
     }
     // A piece wider than this only gets split: the dead time turns it too far.
-    double widest() const noexcept { return curve_.fastest_turn() > 0.0 ? 1.5 / curve_.fastest_turn() : infinity; }
+    double widest() const noexcept { return curve_.lasting_turn() > 0.0 ? 1.5 / curve_.lasting_turn() : infinity; }
 
-    // Where no proof from the limit succeeds: so far down that |L| is beyond 1e8 or below 1e-8.
+    // Where no proof from the limit succeeds, for the phase starts on the negative real axis and leaves it by less than
+    // doubles tell: so far down that |L| is beyond 1e16 or below 1e-16.
     double lowest() const noexcept {
         if (m_ == 0) return 0.0;
-        const double asymptote = std::pow(std::abs(curve_.low_gain()) / (m_ > 0 ? 1e8 : 1e-8), 1.0 / m_);
-        const double w = std::min({asymptote, 1e-3 * curve_.smallest_root(), 1e-3 * widest()});
+        const double asymptote = std::pow(std::abs(curve_.low_gain()) / (m_ > 0 ? 1e16 : 1e-16), 1.0 / m_);
+        const double w = std::min({asymptote, 1e-6 * curve_.smallest_root(), 1e-6 * widest()});
         return is_finite(w) && w > 0.0 ? w : 1e-300;
     }
 
@@ -176,15 +177,13 @@ private:
         if (curve_.limit() != 0.0) return settled_at_limit(w);
         if (!(bound < 1.0)) return rest >= 1.0 && w > 1e4 * std::max(curve_.largest_root(), first_step());
         // Nothing is left where |L| cannot come back to what was found, or is as good as its limit.
-        const bool at_rest = rest > 0.0 && (bound <= rest * (1.0 + 1e-9) || w > 3e3 * curve_.largest_root());
-        if (at_rest || bound < 1e-7) return true;
-        const double near = 1.0 - bound, inverse_near = 1.0 / bound - 1.0;
-        if (near < result_.to_minus_one.distance * (1.0 - closed_to) ||
-            inverse_near < result_.inverse_to_minus_one.distance * (1.0 - closed_to))
-            return false;
-        if (!curve_.has_dead_time())  // the phase has settled toward its last value
-            return w > 1e3 * curve_.largest_root() || curve_.largest_root() == 0.0;
-        return bound < std::max(result_.largest_below_one, 1e-12);
+        if (rest > 0.0 && (bound <= rest * (1.0 + 1e-9) || w > 3e3 * curve_.largest_root())) return true;
+        const double near = 1.0 - bound, inverse_near = 1.0 / bound - 1.0, slack = 1.0 - closed_to;
+        const bool near_settled = near >= result_.to_minus_one.distance * slack && inverse_near >= result_.inverse_to_minus_one.distance * slack;
+        if (!near_settled && bound >= 1e-7) return false;
+        // Without dead time the high end is proved free, or the phase leaves the negative real axis by less than doubles tell.
+        if (!curve_.has_dead_time()) return result_.tail == curve_.end() && w >= 1e6 * curve_.largest_root();
+        return bound < std::max(result_.largest_below_one, curve_.smallest_of_interest()) || curve_.phase_settled(w);
     }
 
     // Without dead time, and with a limit k at high frequency: log(L/k) is at most `left` from here on.
@@ -194,7 +193,7 @@ private:
         const double away = std::abs(k) * (growth(left) - 1.0);
         const double near = std::abs(1.0 + k) - away, inverse_near = std::abs(1.0 + 1.0 / k) - away / (k * k) * 2.0;
         // A negative k is a phase crossing at infinity; on the way there it is passed once at most, early.
-        if (k < 0.0 && w < 1e3 * curve_.largest_root()) return false;
+        if (k < 0.0 && w < 1e6 * curve_.largest_root()) return false;
         const double slack = 1.0 - closed_to;
         return (near >= result_.to_minus_one.distance * slack && inverse_near >= result_.inverse_to_minus_one.distance * slack) || left < 1e-9;
     }
@@ -209,6 +208,9 @@ private:
         look(piece.middle.L, middle);
         if (todo.gain) todo.gain = !settle_gain(piece);
         if (todo.phase) todo.phase = !settle_phase(piece);
+        // Poles and zeros that nearly cancel leave a phase that pieces this small do not settle; where the gain is so far
+        // from 1 it decides nothing.
+        if (todo.phase && depth > 10 && (norm(piece.middle.L) < 1e-14 || norm(piece.middle.L) > 1e14)) todo.phase = false;
         if (todo.near_L && settle_near(open_loop_at(piece.middle, m_), piece, false)) {
             // Over this piece 1 + L turns by less than half a circle.
             const std::complex<double> next = 1.0 + high.L;
@@ -221,7 +223,7 @@ private:
         if (depth > 60 || middle <= low.w || middle >= high.w) {
             // The curve goes through -1: what is here has been looked at.
             if (todo.near_L) last_ = 1.0 + high.L;
-            if (todo.near_L || todo.gain || todo.phase) result_.complete &= result_.to_minus_one.distance < through_minus_one;
+            if (todo.any()) result_.complete &= result_.to_minus_one.distance < through_minus_one;
             return;
         }
         const End center{middle, piece.middle.L};
@@ -305,8 +307,32 @@ private:
             if (last.w < curve_.end()) result_.winding += turn_between(1.0 + last.L, 1.0 + curve_.value(curve_.end()));
             return;
         }
+        if (curve_.has_dead_time() && result_.largest_below_one == 0.0 && !curve_.phase_settled(last.w)) find_late_crossing(last.w);
         // From the last point to the value at infinity, within a disc around 1 or close to the limit.
         result_.winding += std::arg((1.0 + curve_.limit()) / (1.0 + last.L));
+    }
+
+    // Too far out to prove it the first, and too small to matter but for the gain margin.
+    void find_late_crossing(double from) {
+        const auto angle = [&](double w) {
+            const std::complex<double> L = curve_.value(w);
+            return std::atan2(-L.imag(), -L.real());
+        };
+        double low = from, at_low = angle(low);
+        for (int i = 0; i < 2000; ++i) {
+            double high = 1.02 * low;
+            const double at_high = angle(high);
+            if (std::abs(at_low) < 1.0 && std::abs(at_high) < 1.0 && (at_low > 0.0) != (at_high > 0.0)) {
+                for (int k = 0; k < 60; ++k) {
+                    const double middle = 0.5 * (low + high);
+                    ((angle(middle) > 0.0) == (at_low > 0.0) ? low : high) = middle;
+                }
+                if (is_finite(high)) take_phase_crossing({high, false, 0.0});
+                return;
+            }
+            low = high;
+            at_low = at_high;
+        }
     }
 
     const LoopCurve& curve_;

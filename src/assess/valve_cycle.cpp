@@ -103,14 +103,18 @@ ValveCycle cycle_of_jumps(const TransferFunction& process, const PidSettings& se
     put_size(cycle, relay->period, jumps.jump * relay->value_amplitude, jumps.jump * relay->output_amplitude);
     cycle.reason = joined({makes, ": period ", number(*cycle.period), " s, process value +-",
                            number(*cycle.process_value_amplitude),
+                           ", or slower and lopsided where the load needs a position off the middle of two rests",
+                           *cycle.output_amplitude > 50.0 ? ", if the valve's travel allows it" : "",
                            "; retuning changes the period, not the fact; repair the valve"});
     return cycle;
 }
 
 ValveCycle cycle_of_dead_band(const TransferFunction& process, const PidSettings& settings, const ValveSettings& valve,
-                              int integrators, const std::string& fault) {
+                              double gain_margin, int integrators, const std::string& fault) {
     const TransferFunction loop = (process * transfer_function(settings)).cancelled();
-    const detail::DeadBandCycle found = detail::dead_band_cycle(process.cancelled(), loop);
+    detail::DeadBandCycle found = detail::dead_band_cycle(process.cancelled(), loop);
+    // The describing function looks at steps of frequency; a narrow resonance between them shows in the gain margin.
+    found.closeness = std::max(found.closeness, 1.0 / gain_margin);
     const bool unstable = process.unstable_poles() > 0;
     if (unstable && integrators <= 0)
         return said(CycleExistence::undetermined,
@@ -162,7 +166,7 @@ ValveCycle valve_cycle(const TransferFunction& process, const PidSettings& setti
     if (margins.verdict != Verdict::stable) return said(CycleExistence::undetermined, unstable_text(margins.verdict));
     const int integrators = process.integrators() - process.zeros_at_origin() + (settings.integral_gain_per_s() != 0.0 ? 1 : 0);
     if (valve.stick > 0.0 || valve.resolution > 0.0) return cycle_of_jumps(process, settings, valve, integrators, fault);
-    return cycle_of_dead_band(process, settings, valve, integrators, fault);
+    return cycle_of_dead_band(process, settings, valve, *margins.gain_margin, integrators, fault);
 }
 
 }  // namespace v0

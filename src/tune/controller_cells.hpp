@@ -1,4 +1,4 @@
-// A controller's numbers, margins and figures as labelled texts, for columns side by side.
+// A controller's numbers, margins and figures as labeled texts, for columns side by side.
 #pragma once
 
 #include <optional>

@@ -28,7 +28,9 @@ std::optional<WorstCase> worst_over_fit(const TuningSheet& sheet, const PidSetti
     std::optional<Uncertainty> region;
     try {
         region = Uncertainty::from_fit(sheet.fit, confidence);
-    } catch (const Error&) {
+    } catch (const Error& e) {
+        using enum error_code;
+        if (e.code() != out_of_domain && e.code() != not_finite && e.code() != missing_argument) throw;
         return std::nullopt;  // an outcome of the record, not of the settings
     }
     const double scan = sheet.duty.scan_time.value_or(0.0);

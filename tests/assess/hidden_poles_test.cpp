@@ -44,3 +44,13 @@ TEST_CASE("the gain margin counts crossings beyond those listed", "[closed form]
 TEST_CASE("an improper loop is not judged", "[closed form]") {
     CHECK(robustness(TransferFunction::from_factors({.leads = {1.0}})).verdict == Verdict::undetermined);
 }
+
+TEST_CASE("a hidden pole at rest does not hide that the rest is unstable", "[closed form]") {
+    // s exp(-s)/(s + 1)^2 under 100 (1 + 1/s): what is left is 100 exp(-s)/(s + 1), far beyond its ultimate gain of 2.3.
+    const auto process = TransferFunction::from_factors({.zeros_at_origin = 1, .lags = {1.0, 1.0}, .dead_time = 1.0});
+    const PidSettings fierce{.gain = 100.0, .integral_time = 1.0}, mild{.gain = 1.0, .integral_time = 1.0};
+    CHECK(robustness(process, fierce).verdict == Verdict::unstable);
+    CHECK(robustness(process, mild).verdict == Verdict::marginal);
+    CHECK(robustness(process, fierce, {.scan_time = 0.1}).verdict == Verdict::unstable);
+    CHECK(robustness(process, mild, {.scan_time = 0.1}).verdict == Verdict::marginal);
+}

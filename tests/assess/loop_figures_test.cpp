@@ -43,9 +43,9 @@ TEST_CASE("figures of a first-order answer to a step", "[closed form]") {
         CHECK(f.overshoot_percent.value() <= 1e-12);
         CHECK_FALSE(f.decay_ratio.has_value());
         // Sums of powers of q; the rectangle sums go to step tau, step^2 tau / 2 and step tau^2.
-        CHECK(relative_error(f.integrated_error, step * h / (1.0 - q)) <= 1e-11);
-        CHECK(relative_error(f.integrated_absolute_error, std::abs(step) * h / (1.0 - q)) <= 1e-11);
-        CHECK(relative_error(f.integrated_squared_error, step * step * h / (1.0 - q * q)) <= 1e-11);
+        CHECK(relative_error(f.integrated_error, step * h * (1.0 / (1.0 - q) - 0.5)) <= 1e-11);
+        CHECK(relative_error(f.integrated_absolute_error, std::abs(step) * h * (1.0 / (1.0 - q) - 0.5)) <= 1e-11);
+        CHECK(relative_error(f.integrated_squared_error, step * step * h * (1.0 / (1.0 - q * q) - 0.5)) <= 1e-11);
         CHECK(relative_error(f.integrated_time_absolute_error, std::abs(step) * h * h * q / ((1.0 - q) * (1.0 - q))) <= 1e-11);
     }
 }
@@ -149,8 +149,8 @@ TEST_CASE("C10, C11: a dead time in front of a lag only delays what a lag does",
     const double h = 0.05, tau_c = 4.0, q = 1.0 - h / tau_c, step = 10.0;
     const Figures f = figures(simulate(TransferFunction::from_factors({.gain = 2.0}), {.integral_gain = 1.0 / (2.0 * tau_c)},
                                        {.setpoint_step = step, .scan_time = h}, 200.0));
-    CHECK(relative_error(f.integrated_absolute_error, step * h / (1.0 - q)) <= 1e-10);
-    CHECK(relative_error(f.integrated_squared_error, step * step * h / (1.0 - q * q)) <= 1e-10);
+    CHECK(relative_error(f.integrated_absolute_error, step * h * (1.0 / (1.0 - q) - 0.5)) <= 1e-10);
+    CHECK(relative_error(f.integrated_squared_error, step * step * h * (1.0 / (1.0 - q * q) - 0.5)) <= 1e-10);
     CHECK(relative_error(f.rise_time.value(), h * std::log(9.0) / -std::log(q)) <= 1e-4);
     CHECK(absolute_error(f.settling_time.value(), h * std::ceil(std::log(0.02) / std::log(q))) <= 1e-9);
     CHECK(f.reversals == 0);

@@ -97,6 +97,12 @@ private:
         double above = infinity, below = 0.0, phase = infinity, delay = infinity;
         const auto take = [&](double factor) { factor > 1.0 ? above = std::min(above, factor) : below = std::max(below, factor); };
         for (double w : brute_.phase_crossings()) take(1.0 / std::abs(brute_.value(w)));
+        // Where gain lasts at high frequency brute force stops before the curve has turned: crossovers beyond its last look
+        // count where its own arithmetic calls them real (see compare_crossings).
+        const double last = brute_.phase_crossings().empty() ? 0.0 : brute_.phase_crossings().back();
+        if (lasting_gain() != 0.0)
+            for (const auto& c : r_.phase_crossovers)
+                if (c.frequency_rad_s > last) take(1.0 / std::abs(brute_.value(c.frequency_rad_s)));
         if (f_.integrators == f_.zeros_at_origin && f_.gain < 0.0) take(-1.0 / f_.gain);
         const double at_infinity = lasting_gain();
         if (at_infinity != 0.0 && (f_.dead_time > 0.0 || at_infinity < 0.0)) take(1.0 / std::abs(at_infinity));

@@ -184,3 +184,36 @@ TEST_CASE("open-loop poles on the axis away from rest are followed", "[closed fo
     // A zero on top of the pole hides an undamped mode.
     CHECK(robustness(loop({.gain = 0.5, .lags = {1.0}, .lead_pairs = {{1.0, 0.0}}, .lag_pairs = {{1.0, 0.0}}})).verdict == Verdict::marginal);
 }
+
+TEST_CASE("crossovers far out are found as well", "[closed form]") {
+    // 1e-8/(s + 1)^3 meets the axis at sqrt(3) with 1/8 of its gain.
+    CHECK(relative_error(robustness(loop({.gain = 1e-8, .lags = {1.0, 1.0, 1.0}})).gain_margin.value(), 8e8) <= 1e-9);
+    // g exp(-s)/(s + 1): tan w = -w, at w = 2.0287578381104342 (tables of x + tan x = 0), gain 1/sqrt(1 + w^2).
+    const double w = 2.0287578381104342;
+    CHECK(relative_error(robustness(loop({.gain = 1e-9, .lags = {1.0}, .dead_time = 1.0})).gain_margin.value(), 1e9 * std::sqrt(1.0 + w * w)) <= 1e-9);
+    // (s + 1)^2/(s^2 (a s + 1)), a = 2 + e: the axis is met where s^2 (a s + 1) + k (s + 1)^2 has a pair on it: k = a - 2 over ...
+    // Routh: (1 + k) 2 k = a k, so k = a/2 - 1 = e/2.
+    const double e = 1e-9;
+    CHECK(relative_error(robustness(loop({.integrators = 2, .leads = {1.0, 1.0}, .lags = {2.0 + e}})).gain_reduction_margin.value(), 0.5 * ((2.0 + e) - 2.0)) <= 1e-6);
+}
+
+TEST_CASE("what right-half-plane poles and zeros cost every controller", "[published]") {
+    // Skogestad and Postlethwaite, Multivariable Feedback Control, 2005, sections 5.3 and 5.4 (from memory): of a stable loop with an
+    // unstable pole p and a zero z in the right half plane, Ms >= |z + p|/|z - p|, and Mt >= that times exp(p dead time).
+    int stable = 0;
+    for (double p : {0.05, 0.1, 0.3})
+        for (double z : {4.0, 10.0, 50.0})
+            for (double dead_time : {0.0, 0.05, 0.2})
+                for (double gain : {1.2, 1.5, 2.0, 3.0, 5.0})
+                    for (double Ti : {20.0, 60.0, 200.0}) {
+                        const auto G = loop({.gain = -1.0, .leads = {-1.0 / z}, .lags = {-1.0 / p}, .dead_time = dead_time});
+                        const auto r = robustness(G, PidSettings{.gain = gain, .integral_time = Ti});
+                        if (r.verdict != Verdict::stable) continue;
+                        ++stable;
+                        const double bound = (z + p) / (z - p);
+                        INFO("p " << p << ", z " << z << ", dead time " << dead_time << ", gain " << gain << ", Ti " << Ti);
+                        CHECK(*r.max_sensitivity >= bound * (1.0 - 1e-9));
+                        CHECK(*r.max_complementary_sensitivity >= bound * std::exp(p * dead_time) * (1.0 - 1e-9));
+                    }
+    CHECK(stable > 100);
+}

@@ -180,8 +180,59 @@ static void sticking_valve(void) {
     OK(tauw_model_destroy(&process));
 }
 
+/* Oracle: invariant, every column is the trend of its loop alone. */
+static void many_loops(void) {
+    enum { LOOPS = 3 };
+    tauw_model* models[LOOPS] = {NULL, NULL, NULL};
+    const tauw_model* processes[LOOPS];
+    tauw_pid_settings settings[LOOPS];
+    tauw_duty duty;
+    size_t scans = 0;
+    double process_value[LOOPS * 61], output[LOOPS * 61];
+    tauw_duty_defaults(&duty, sizeof duty);
+    duty.has_scan_time = 1;
+    duty.scan_time = 0.5;
+    duty.setpoint_step = 40.0;
+    duty.noise = 0.25;
+    for (size_t i = 0; i < LOOPS; ++i) {
+        OK(tauw_first_order_plus_dead_time(1.0 + (double)i, 10.0, 0.8 * (double)i, &models[i], &error));
+        processes[i] = models[i];
+        settings[i] = settings_of(6.0 / (1.0 + (double)i), 10.0);
+    }
+    OK(tauw_scans_of(&duty, 30.0, &scans, &error));
+    CHECK(scans == 61);
+    OK(tauw_simulate_many(processes, settings, LOOPS, &duty, 30.0, process_value, output, LOOPS * scans, &error));
+    for (size_t i = 0; i < LOOPS; ++i) {
+        tauw_trend* trend = NULL;
+        tauw_trend_columns c;
+        tauw_trend_columns_defaults(&c, sizeof c);
+        OK(tauw_simulate(models[i], &settings[i], &duty, 30.0, &trend, &error));
+        OK(tauw_trend_view(trend, &c, &error));
+        CHECK(c.n == scans && c.limited == 1);
+        for (size_t k = 0; k < c.n; ++k)
+            CHECK(process_value[k * LOOPS + i] == c.process_value[k] && output[k * LOOPS + i] == c.output[k]);
+        OK(tauw_trend_destroy(&trend));
+    }
+    OK(tauw_simulate_many(NULL, NULL, 0, &duty, 30.0, NULL, NULL, 0, &error));
+    CHECK_STATUS(tauw_scans_of(&duty, 0.1, &scans, &error), TAUW_ERROR_OUT_OF_DOMAIN);
+    CHECK_STATUS(tauw_scans_of(&duty, 30.0, NULL, &error), TAUW_ERROR_NULL_POINTER);
+    CHECK_STATUS(tauw_simulate_many(processes, settings, LOOPS, &duty, 30.0, process_value, output, 182, &error), TAUW_ERROR_BUFFER_TOO_SMALL);
+    CHECK_STATUS(tauw_simulate_many(processes, settings, LOOPS, &duty, 60.0, NULL, output, 363, &error), TAUW_ERROR_NULL_POINTER);
+    CHECK_STATUS(tauw_simulate_many(processes, NULL, LOOPS, &duty, 30.0, process_value, output, 183, &error), TAUW_ERROR_NULL_POINTER);
+    settings[1].integral_time = -1.0;
+    CHECK_STATUS(tauw_simulate_many(processes, settings, LOOPS, &duty, 30.0, process_value, output, 183, &error), TAUW_ERROR_OUT_OF_DOMAIN);
+    CHECK(strstr(error.message, "[1]") != NULL);
+    settings[1].struct_size = 3;
+    CHECK_STATUS(tauw_simulate_many(processes, settings, LOOPS, &duty, 30.0, process_value, output, 183, &error), TAUW_ERROR_WRONG_STRUCT_SIZE);
+    settings[1] = settings_of(2.0, 10.0);
+    processes[2] = NULL;
+    CHECK_STATUS(tauw_simulate_many(processes, settings, LOOPS, &duty, 30.0, process_value, output, 183, &error), TAUW_ERROR_NULL_POINTER);
+    for (size_t i = 0; i < LOOPS; ++i) OK(tauw_model_destroy(&models[i]));
+}
+
 void test_trends(void) {
     duty_columns();
+    many_loops();
     continuous();
     sticking_valve();
 }

@@ -35,6 +35,7 @@ void bind_discretize(py::module_& m);
 void bind_instruments(py::module_& m);
 void bind_assess(py::module_& m);
 void bind_trends(py::module_& m);
+void bind_many_trends(py::module_& m);
 void bind_uncertain(py::module_& m);
 void bind_synthesize(py::module_& m);
 void bind_tune(py::module_& m);

@@ -202,6 +202,7 @@ void bind_valve_cycle(py::module_& m) {
 void bind_trends(py::module_& m) {
     bind_duty(m);
     bind_trend(m);
+    bind_many_trends(m);
     bind_figures(m);
     bind_valve_cycle(m);
 }

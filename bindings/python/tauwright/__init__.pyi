@@ -25,6 +25,7 @@ __all__ = [
     "GainCrossover",
     "InternalModelController",
     "LoopRobustness",
+    "ManyTrends",
     "Move",
     "Obstacle",
     "PhaseCrossover",
@@ -76,6 +77,7 @@ __all__ = [
     "second_order_plus_dead_time",
     "settings_from",
     "simulate",
+    "simulate_many",
     "step_response",
     "synthesize",
     "transfer_function",
@@ -948,6 +950,18 @@ def simulate(G: TransferFunction, settings: PidSettings, duty: Duty, *, horizon:
 def continuous_trend(
     G: TransferFunction, settings: PidSettings, duty: Duty, *, horizon: float, points: int = 601
 ) -> Trend: ...
+
+class ManyTrends:
+    @property
+    def time_s(self) -> _Doubles: ...
+    @property
+    def process_value(self) -> _Doubles: ...
+    @property
+    def output(self) -> _Doubles: ...
+
+def simulate_many(
+    loops: Sequence[tuple[TransferFunction, PidSettings]], duty: Duty, *, horizon: float, into: ManyTrends | None = None
+) -> ManyTrends: ...
 
 class Figures:
     @property

@@ -405,10 +405,16 @@ TAUW_API int32_t tauw_violating_share_of(const tauw_model* process, const tauw_p
 
 /* Runs the PID block of the settings against the exact sampled process of any order up to 20 over horizon_s
  * seconds, 2 to ten million scans. Errors: MISSING_ARGUMENT (no scan time), NOT_FINITE, OUT_OF_DOMAIN,
- * CONFLICTING_ARGUMENTS.
- * Since 0.1. Concurrent calls on the same handle are fine. Allocates the handle; the caller destroys it. */
+ * CONFLICTING_ARGUMENTS. The last gives the same bits for each processes[loops] with settings[loops] under one duty, in
+ * process_value[length] and output[length], all loops of scan 0 first; `length` is tauw_scans_of times `loops`. Where an
+ * unstable process ran away its last values are repeated. Also BUFFER_TOO_SMALL; of no use are arrays after an error.
+ * Since 0.1. Concurrent calls on the same handle are fine. The first allocates the handle; the caller destroys it. */
 TAUW_API int32_t tauw_simulate(const tauw_model* process, const tauw_pid_settings* settings, const tauw_duty* duty,
                                double horizon_s, tauw_trend** trend, tauw_error* error);
+TAUW_API int32_t tauw_scans_of(const tauw_duty* duty, double horizon_s, size_t* scans, tauw_error* error);
+TAUW_API int32_t tauw_simulate_many(const tauw_model* const* processes, const tauw_pid_settings* settings, size_t loops,
+                                    const tauw_duty* duty, double horizon_s, double* process_value, double* output,
+                                    size_t length, tauw_error* error);
 
 /* The response as the differential equations give it, without scan and limits, at `points` (2 to ten million) evenly
  * spaced times from 0 to horizon_s; to 1e-12 of the largest deviation. The duty's scan time and seed are ignored.

@@ -67,8 +67,9 @@ struct Robustness {
     std::optional<double> max_complementary_sensitivity = {};            ///< Mt = max |L/(1 + L)|
     std::optional<double> max_complementary_sensitivity_frequency = {};  ///< rad/s; 0 where at rest
     std::vector<GainCrossover> gain_crossovers = {};
-    std::vector<PhaseCrossover> phase_crossovers = {};  ///< as far as they matter: at most 1000
-    bool phase_crossovers_capped = false;               ///< there are more, infinitely many where the loop keeps gain at high frequency
+    /// As far as they matter: up to where no smaller margin can follow, at most 1000.
+    std::vector<PhaseCrossover> phase_crossovers = {};
+    bool phase_crossovers_capped = false;  ///< more than 1000, or infinitely many at the loop's gain at high frequency
     /// Lowest frequency at which |S| rises through 1/sqrt(2), and highest at which |T| falls through it,
     /// rad/s; empty for none. Source: Skogestad and Postlethwaite, Multivariable Feedback Control, 2005, 2.4.
     std::optional<double> sensitivity_bandwidth = {}, complementary_bandwidth = {};
@@ -92,19 +93,23 @@ struct RobustnessOptions {
 /// convexity. Frequencies, gains and peaks to about 1e-12 relative (1e-10 where the curve passes within
 /// 1e-3 of -1). Two counts of the closed loop's poles that know nothing of each other must agree:
 /// the winding of 1 + L, and the poles without dead time followed as it grows (Walton and Marshall,
-/// IEE Proc. D 134, 1987); else `undetermined`. Allocates.
+/// IEE Proc. D 134, 1987); else `undetermined`, as for improper loops and for more than 400,000 pieces. Within 1e-9 of
+/// -1 the curve goes through it for all that doubles tell: `marginal`, or `unstable` where other poles are
+/// to the right. A mode on the axis that cancels is `marginal` where all else is stable. With dead time,
+/// crossovers below |L| = 1e-12 (1e-4 with two dead times: found there, not proved the first) do not count; gain margins
+/// beyond a factor of 1e7 may be given as none. Allocates.
 Robustness robustness(const TransferFunction& open_loop);
 
 /// Of process and settings, every filter included. With a scan time the figures are those of the
 /// sampled loop, on frequencies up to half the sampling frequency; `unstable_poles` are then those outside the unit
-/// circle, and delay margins are exact where they are whole scans. A zero of the process at s = 0 against integral
+/// circle; the delay margin counts fractions of a scan, each crossover's own is from its angle. A zero of the process at s = 0 against integral
 /// action is `marginal`: the loop hides a pole at 0. Throws `not_finite`, `out_of_domain`, and what
-/// `require(settings)` says.
+/// `require(settings)` says. Allocates.
 Robustness robustness(const TransferFunction& process, const PidSettings& settings, const RobustnessOptions& options = {});
 
 /// Of a process and the exact synthesized controller, which holds its model's dead time: where the
 /// process differs from the model there are two dead times. Its own right-half-plane poles (roots of 1 - T) are
-/// counted first. `options.scan_time` must be empty (`out_of_domain`).
+/// counted first. `options.scan_time` must be empty (`out_of_domain`). Allocates.
 Robustness robustness(const TransferFunction& process, const InternalModelController& controller,
                       const RobustnessOptions& options = {});
 

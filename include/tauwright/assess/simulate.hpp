@@ -75,7 +75,7 @@ Trend simulate(const TransferFunction& process, const PidSettings& settings, con
 /// Figures of a trend. Times count from the step, those of a load from the time it enters. What looks at the set-point
 /// step (overshoot, rise, settling) looks at the time before a load that comes later. Set-point figures of a ramp are
 /// taken against the set point it ends at. A load is the duty's load step or, without one, its disturbance from the
-/// first value that is not 0. Integrals are sums over the scans.
+/// first value that is not 0. Integrals are by trapezoids between the scans.
 struct Figures {
     std::optional<double> overshoot_percent = {};  ///< of the set-point step; empty without one
     std::optional<double> settling_time = {};    ///< until it stays within 2 % of the set-point step; empty where it does not within the horizon

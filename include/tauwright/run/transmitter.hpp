@@ -26,9 +26,10 @@ struct TransmitterCoefficients {
 class Transmitter {
 public:
     Transmitter() = default;
-    /// At rest at `initial_value`.
+    /// At rest at `initial_value`; at 0 where that is not finite.
     Transmitter(const TransmitterCoefficients& coefficients, double initial_value) noexcept
-        : coefficients_(coefficients), noise_(coefficients.seed), lagged_(initial_value), measured_(initial_value) {}
+        : coefficients_(coefficients), noise_(coefficients.seed), lagged_(is_finite(initial_value) ? initial_value : 0.0),
+          measured_(lagged_) {}
 
     /// One scan. Returns the measured value; one that is not finite is handed on as it is and not remembered.
     double step(double process_value) noexcept {
