@@ -108,11 +108,12 @@ void bind_trend(py::module_& m) {
                       "the output stood on a limit at least once; in a continuous trend: it would have left them")
         .def_readonly("ran_away", &Trend::ran_away, "an unstable process left its rest beyond measure; the trend ends before that")
         .def("plot",
-             [](const py::object& trend, const py::object& as_found) {
-                 return py::module_::import("tauwright.plot").attr("trend_figure")(trend, "as_found"_a = as_found);
+             [](const py::object& trend, const py::object& as_found, const std::pair<std::string, std::string>& labels) {
+                 return py::module_::import("tauwright.plot").attr("trend_figure")(trend, "as_found"_a = as_found, "labels"_a = labels);
              },
-             py::kw_only(), "as_found"_a = py::none(),
-             "A Matplotlib Figure of set point, process value, output and valve; as_found: a Trend drawn beneath.")
+             py::kw_only(), "as_found"_a = py::none(), "labels"_a = std::pair<std::string, std::string>("as found", "proposed"),
+             "A Matplotlib Figure of set point, process value, output and valve; as_found: a Trend drawn beneath;\n"
+             "labels: what the two are called, the one beneath first.")
         .def("__len__", &Trend::size)
         .def("__repr__", [](const Trend& t) {
             const double span = t.size() > 0 ? t.time_s.back() - t.time_s.front() : 0.0;

@@ -48,7 +48,7 @@ def _draw_limits(ax: Axes, trends: list[tw.Trend]) -> None:
     ax.set_ylim(low, high)
 
 
-def _draw_values(ax: Axes, t: list[Array], trends: list[tw.Trend]) -> None:
+def _draw_values(ax: Axes, t: list[Array], trends: list[tw.Trend], names: tuple[str, str]) -> None:
     main = trends[-1]
     labels: list[_Label] = []
     ax.plot(t[-1], main.setpoint, color="black", lw=0.9, ls=DOTS, drawstyle="steps-post" if main.duty.setpoint_ramp_time == 0 else
@@ -59,24 +59,26 @@ def _draw_values(ax: Axes, t: list[Array], trends: list[tw.Trend]) -> None:
         labels.append((float(main.measured[-1]), "measured", SAMPLE))
     if len(trends) == 2:
         ax.plot(t[0], trends[0].process_value, color=FOUND, ls=FOUND_DASHES, zorder=3)
-        labels.append((float(trends[0].process_value[-1]), "as found", FOUND))
+        labels.append((float(trends[0].process_value[-1]), names[0], FOUND))
+        if not np.array_equal(trends[0].setpoint, main.setpoint[: trends[0].setpoint.size]):
+            ax.plot(t[0], trends[0].setpoint, color=FOUND, lw=0.7, ls=DOTS, drawstyle="steps-post", zorder=2)
     ax.plot(t[-1], main.process_value, color=ACCENT, zorder=4)
-    labels.append((float(main.process_value[-1]), "proposed" if len(trends) == 2 else "process value", ACCENT))
+    labels.append((float(main.process_value[-1]), names[1] if len(trends) == 2 else "process value", ACCENT))
     shown = [x for trend in trends for x in (trend.process_value, trend.setpoint)]
     ax.set_ylim(*limits(*shown, *([main.measured] if len(trends) == 1 else [])))
     label_ends(ax, labels)
     ax.set_ylabel("process value")
 
 
-def _draw_column(ax: Axes, t: list[Array], trends: list[tw.Trend], column: str, name: str) -> None:
+def _draw_column(ax: Axes, t: list[Array], trends: list[tw.Trend], column: str, name: str, names: tuple[str, str]) -> None:
     """One column of every trend, as it is held from scan to scan; of a single trend's output the valve with it."""
     labels: list[_Label] = []
     values: list[Array] = [getattr(trend, column) for trend in trends]
     if len(trends) == 2:
         ax.plot(t[0], values[0], color=FOUND, ls=FOUND_DASHES, lw=1.0, drawstyle="steps-post", zorder=3)
-        labels.append((float(values[0][-1]), "as found", FOUND))
+        labels.append((float(values[0][-1]), names[0], FOUND))
     ax.plot(t[-1], values[-1], color=ACCENT, lw=1.1, drawstyle="steps-post", zorder=4)
-    labels.append((float(values[-1][-1]), "proposed" if len(trends) == 2 else name, ACCENT))
+    labels.append((float(values[-1][-1]), names[1] if len(trends) == 2 else name, ACCENT))
     if len(trends) == 1 and column == "output" and _sticks(trends[0]):
         position = trends[0].valve_position
         ax.plot(t[0], position, color="black", ls=(0, (6, 1.5, 1, 1.5)), lw=1.0, drawstyle="steps-post", zorder=5)
@@ -94,9 +96,9 @@ def _draw_load(ax: Axes, t: Array, trend: tw.Trend) -> None:
     ax.set_ylabel("load")
 
 
-def trend_figure(trend: tw.Trend, *, as_found: tw.Trend | None = None) -> Figure:
+def trend_figure(trend: tw.Trend, *, as_found: tw.Trend | None = None, labels: tuple[str, str] = ("as found", "proposed")) -> Figure:
     """Set point and process value above, output and valve position below, with the load marked; the record of a
-    disturbance in a row of its own. `as_found` is drawn beneath `trend`, which is then the proposed one."""
+    disturbance in a row of its own. `as_found` is drawn beneath `trend`; `labels` name the two, in that order."""
     for name, value in (("trend", trend), ("as_found", as_found)):
         if not isinstance(value, tw.Trend) and not (name == "as_found" and value is None):
             raise TypeError(f"{name} is {value!r}; give what tauwright.simulate or continuous_trend returned")
@@ -114,10 +116,10 @@ def trend_figure(trend: tw.Trend, *, as_found: tw.Trend | None = None) -> Figure
         rows += [figure.add_subplot(grid[i], sharex=rows[0]) for i in range(1, len(heights))]
         scale, unit = time_scale(float(trend.time_s[-1] - trend.time_s[0]))
         t = [x.time_s / scale for x in trends]
-        _draw_values(rows[0], t, trends)
-        _draw_column(rows[1], t, trends, "output", "output")
+        _draw_values(rows[0], t, trends, labels)
+        _draw_column(rows[1], t, trends, "output", "output", labels)
         if valves:
-            _draw_column(rows[2], t, trends, "valve_position", "valve position")
+            _draw_column(rows[2], t, trends, "valve_position", "valve position", labels)
         if disturbed:
             _draw_load(rows[-1], t[-1], trend)
         for row in rows[1:]:
@@ -129,6 +131,6 @@ def trend_figure(trend: tw.Trend, *, as_found: tw.Trend | None = None) -> Figure
         rows[0].set_xlim(0.0, float(max(x[-1] for x in t)))
         rows[-1].set_xlabel(f"time, {unit}")
         figure.text(0.09, 1.0 - 0.2 / inches, "Closed-loop trend" if as_found is None else
-                    "Closed-loop trends, as found and proposed", fontsize=10, fontweight="bold", va="center")
+                    f"Closed-loop trends, {labels[0]} and {labels[1]}", fontsize=10, fontweight="bold", va="center")
         figure.align_ylabels()
         return figure

@@ -96,7 +96,8 @@ def test_the_curves_are_the_loop(scan_time):
     tw.Duty(disturbance=np.sin(np.arange(150) / 8), scan_time=1, valve=tw.ValveSettings(dead_band=1))], ids=str)
 def test_trends(duty):
     trend, other = (tw.simulate(G, s, duty, horizon=200) for s in (SETTINGS, tw.PidSettings(0.3, integral_time=20)))
-    for figure, names in ((trend.plot(), ("process value", "output")), (trend.plot(as_found=other), ("as found", "proposed"))):
+    for figure, names in ((trend.plot(), ("process value", "output")), (trend.plot(as_found=other), ("as found", "proposed")),
+                          (trend.plot(as_found=other, labels=("sticking", "healthy")), ("sticking", "healthy"))):
         assert overlaps(figure) == []
         words = words_of(figure)
         assert all(name in words for name in names) and "set point" in words
