@@ -34,7 +34,7 @@ std::optional<WorstCase> worst_over_fit(const TuningSheet& sheet, const PidSetti
         return std::nullopt;  // an outcome of the record, not of the settings
     }
     const double scan = sheet.duty.scan_time.value_or(0.0);
-    return worst_case(*sheet.model, as_it_works(settings, scan), *region, {.extra_delay = 0.5 * scan});
+    return worst_case(*sheet.model, as_it_works(settings, scan), *region, {.extra_delay = 0.5 * scan, .tolerance = 1e-3, .most_boxes = 20'000});
 }
 
 std::string weakness_of(const std::optional<WorstCase>& worst) {
