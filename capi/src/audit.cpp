@@ -51,19 +51,12 @@ struct Options {
     tauwright::AuditOptions own;
 };
 
-bool answer(int32_t value, const char* name) {
-    if (value != 0 && value != 1)
-        throw Error(error_code::unknown_name,
-                    std::string(name) + " returned " + std::to_string(value) + "; return 1 to go on or 0 to end");
-    return value == 1;
-}
-
 Options options_of(const tauw_audit_options* source) {
     Options options{.c = source == nullptr ? shell::fresh<tauw_audit_options>() : shell::read(source, "options"), .own = {}};
     options.own.threads = options.c.threads;
     if (options.c.progress != nullptr)
         options.own.progress = [progress = options.c.progress, context = options.c.context](std::size_t done) {
-            return answer(progress(done, context), "options.progress");
+            return shell::goes_on(progress(done, context), "options.progress");
         };
     return options;
 }
@@ -178,7 +171,7 @@ int32_t tauw_audit_stream(tauw_audit_source source, tauw_audit_sink sink, const 
         tauwright::AuditSummary sum;
         const auto next = [&](AuditLoop& loop) {
             tauw_audit_loop c = shell::fresh<tauw_audit_loop>();
-            if (!answer(source(&c, context), "source")) return false;
+            if (!shell::goes_on(source(&c, context), "source")) return false;
             loop = loop_of(c, "loop");
             return true;
         };
@@ -186,7 +179,7 @@ int32_t tauw_audit_stream(tauw_audit_source source, tauw_audit_sink sink, const 
         const auto take = [&](const AuditRow& row) {
             handed.value.assign(1, row);
             add(tauwright::summary_of(handed.value), sum);
-            if (!answer(sink(&handed, context), "sink")) throw SinkCancelled();
+            if (!shell::goes_on(sink(&handed, context), "sink")) throw SinkCancelled();
         };
         try {
             sum.cancelled = tauwright::audit(next, take, with.own).cancelled;

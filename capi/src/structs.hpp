@@ -173,6 +173,14 @@ inline bool flag(std::int32_t value, const std::string& name) {
     return value == 1;
 }
 
+/// What a callback of the caller's returned: 1 to go on, 0 to end.
+inline bool goes_on(std::int32_t value, const char* name) {
+    if (value != 0 && value != 1)
+        throw Error(error_code::unknown_name,
+                    std::string(name) + " returned " + std::to_string(value) + "; return 1 to go on or 0 to end");
+    return value == 1;
+}
+
 /// An enumeration value 0 .. last; `offered` lists them for the message.
 template <class E>
 E choice(std::int32_t value, E last, const std::string& name, const char* offered) {

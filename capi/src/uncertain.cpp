@@ -60,11 +60,7 @@ const tauwright::TransferFunction& nominal(const tauw_model* process, const Unce
 tauwright::Progress progress_of(tauw_progress progress, void* context) {
     if (progress == nullptr) return {};
     return [progress, context](double share_done) {
-        const int32_t answer = progress(share_done, context);
-        if (answer != 0 && answer != 1)
-            throw Error(error_code::unknown_name, "options.progress returned " + std::to_string(answer) +
-                                                      "; return 1 to go on or 0 to cancel");
-        return answer == 1;
+        return shell::goes_on(progress(share_done, context), "options.progress");
     };
 }
 

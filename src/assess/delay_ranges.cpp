@@ -23,7 +23,7 @@ std::vector<Passing> passings(const LoopCurve& curve, const SweepResult& found, 
     for (const Crossing& c : found.gain_crossings) {
         if (c.touches) continue;
         const double period = turn / c.w, here = dead_time + std::arg(-curve.value(c.w)) / c.w;
-        const int poles = curve.at(c.w).slope.real() - curve.net_integrators() / c.w < 0.0 ? 2 : -2;
+        const int poles = curve.gain_falls(c.w) ? 2 : -2;
         list.push_back({here - std::floor(here / period) * period, period, poles});
     }
     return list;

@@ -51,6 +51,9 @@ public:
     /// The walk looks for phase crossings down to this |L|.
     virtual double smallest_of_interest() const noexcept { return 1e-12; }
 
+    /// |L| falls at w; a pair of poles that meets the path there goes to the right as the dead time grows.
+    bool gain_falls(double w) const noexcept { return at(w).slope.real() - net_integrators_ / w < 0.0; }
+
     /// Where the path ends: infinite, or half the sampling frequency.
     double end() const noexcept { return end_; }
     /// Poles at 0 less zeros at 0.

@@ -137,7 +137,7 @@ std::optional<int> poles_followed(const TransferFunction& loop, const LoopCurve&
         const double passed = (dead_time * w - angle) / (2.0 * pi), whole = std::round(passed);
         const bool arriving = std::abs(passed - whole) < 1e-10 * std::max(1.0, whole);  // a pair just on the axis
         auto turns = static_cast<int>(arriving ? whole : std::floor(passed) + 1.0);
-        const bool to_the_right = curve.at(w).slope.real() - curve.net_integrators() / w < 0.0;
+        const bool to_the_right = curve.gain_falls(w);
         if (start->on_axis > 0 && std::abs(std::arg(-L0)) < 1e-9) {  // a pair that starts on the axis
             left_axis += 2;
             // It comes from neither side: going left takes nothing off the count.

@@ -184,10 +184,7 @@ Robustness robustness(const TransferFunction& process, const InternalModelContro
     Robustness r;
     const MismatchCurve curve(process.with_dead_time(process.dead_time() + options.extra_delay), controller);
     r.fragile = curve.fragile();
-    if (hides_integrator(process * controller.filter()) && curve.net_integrators() <= 0) {
-        judge(r, Verdict::marginal);
-        return r;
-    }
+    const bool hidden = hides_integrator(process * controller.filter()) && curve.net_integrators() <= 0;
     if (curve.neutral()) {
         if (!curve.commensurate()) judge(r, Verdict::unstable);
         return r;
@@ -202,6 +199,7 @@ Robustness robustness(const TransferFunction& process, const InternalModelContro
     const SweepResult found = sweep(curve, nullptr);
     collect_crossovers(curve, found, r);
     judge(r, found, poles_by_winding(curve, found), poles_by_gain(curve, found));
+    if (hidden) return hiding(hidden, std::move(r));
     if (r.verdict == Verdict::stable) {
         take_margins(curve, found, r);
         r.fragile |= curve.fragile();

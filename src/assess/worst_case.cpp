@@ -71,7 +71,7 @@ WorstCase of_models(const PidSettings& settings, const std::vector<TransferFunct
     // What is worse comes first: unstable, marginal, undetermined, stable with the largest Ms.
     const auto badness = [&](const Robustness& r) {
         switch (r.verdict) {
-            case Verdict::unstable: return 4.0 * infinity;
+            case Verdict::unstable: return infinity;
             case Verdict::marginal: return 1e300;
             case Verdict::undetermined: return 1e299;
             case Verdict::stable: return r.max_sensitivity.value_or(0.0);
